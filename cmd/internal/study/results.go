@@ -1,0 +1,134 @@
+package study
+
+import (
+	"cedewright/market"
+	"cedewright/optimize"
+)
+
+// Head is what every result says about where it comes from.
+type Head struct {
+	Title    string
+	Currency string
+	Years    int
+	Seed     uint64 // seed of the book
+	Notes    []string
+	Warnings []string // what is extrapolated, thin or doubtful, one sentence each
+	Inputs   []Input  // every file read, the study first
+}
+
+// Input is a file that was read.
+type Input struct {
+	Path   string // as given
+	SHA256 string // hexadecimal
+	Rows   int    // data rows read; 0 for the study itself
+}
+
+// ClassLook describes one class before reinsurance; money per year.
+type ClassLook struct {
+	Name     string
+	Premium  float64
+	Expenses float64           // fraction of premium
+	Loss     optimize.Estimate // mean annual loss
+	SD       float64           // standard deviation of the annual loss
+	OneIn10  float64           // annual loss exceeded in one year of ten
+	OneIn200 float64
+	Events   float64 // events with a loss to the class, per year
+}
+
+// PerilLook describes one peril before reinsurance, all classes together.
+type PerilLook struct {
+	Name          string
+	Events        float64           // per year; attritional: 0
+	Loss          optimize.Estimate // mean annual loss
+	LargestOneIn  []float64         // largest event of a year, at each of ReturnPeriods
+	AnnualOneIn   []float64         // annual loss, at each of ReturnPeriods
+	LargestOfBook float64           // largest event simulated
+}
+
+// ReturnPeriods are the return periods in years of every exceedance table and picture.
+var ReturnPeriods = []float64{2, 5, 10, 20, 50, 100, 200, 500, 1000}
+
+// Look is the answer of the verb look: the data and the gross position.
+type Look struct {
+	Head
+	Classes []ClassLook
+	Total   ClassLook // all classes
+	Perils  []PerilLook
+	Gross   optimize.Appraisal // no cover
+	Fits    []HistoryFit       // severity and frequency fitted to history files
+}
+
+// HistoryFit tells what was fitted to a file of historical losses.
+type HistoryFit struct {
+	Model         string
+	File          string
+	Losses        int
+	Years         int     // calendar years of history
+	Threshold     float64 // money
+	Exceedances   int
+	Xi, XiError   float64 // shape and its standard error
+	Beta          float64 // scale, money
+	BetaError     float64
+	Frequency     string // "negative binomial, mean 197, size 55.5"
+	LargestLoss   float64
+	Extrapolation string // how far the model goes beyond the data, one sentence
+}
+
+// CurveFit is one market curve with what speaks for it.
+type CurveFit struct {
+	Curve      market.Curve
+	Chosen     *market.Fit   // nil when the curve was set by hand
+	Candidates []*market.Fit // all families tried, for comparison
+}
+
+// Fitted is the answer of the verb fit.
+type Fitted struct {
+	Head
+	Curves []CurveFit
+}
+
+// Appraised is the answer of the verb appraise: no cover first, then the programmes in the order of the study.
+type Appraised struct {
+	Head
+	CostOfCapital float64
+	OwnFunds      float64
+	Gross         GrossFigures
+	Programmes    []optimize.Appraisal // first is "no cover"
+	Differences   []Difference         // of every later programme to the first named "expiring" or, without one, to no cover
+}
+
+// GrossFigures is the position without any treaty; money per year.
+type GrossFigures struct {
+	Premium  float64
+	Expenses float64
+	Loss     optimize.Estimate
+	Capital  []optimize.CapitalFigure // Net = Gross here
+	Result   optimize.NetResult
+}
+
+// Difference compares the total cost of two programmes on common years.
+type Difference struct {
+	Programme string
+	Against   string
+	TotalCost optimize.Estimate // money per year, negative = cheaper
+}
+
+// Searched is the answer of the verb search.
+type Searched struct {
+	Appraised            // no cover, the start programme, the study's other programmes, and last the best found, named "best found"
+	Result    optimize.Result
+	Start     optimize.Appraisal
+	NoCover   optimize.Appraisal
+	Curves    []CurveFit
+	Curve     ExceedanceCurves // gross, with the start programme, with the best
+	Keep      []string         // constraints in words
+	Space     string           // the decision space in words, with its size
+}
+
+// ExceedanceCurves gives the annual loss to the cedant at return periods: gross, and net of programmes with premiums left out.
+type ExceedanceCurves struct {
+	ReturnPeriods []float64
+	Gross         []float64
+	Programmes    []string
+	Net           [][]float64 // by programme
+}

@@ -1,0 +1,62 @@
+package optimize
+
+import "cedewright/portfolio/treaty"
+
+// Estimate is a simulated figure and its standard error, both in the figure's unit.
+type Estimate struct {
+	Value         float64
+	StandardError float64
+}
+
+// CapitalFigure is required capital under one standard, in money. Relief = Gross − Net.
+type CapitalFigure struct {
+	Standard string   // name in the study
+	Gross    Estimate // with no reinsurance
+	Net      Estimate // with the programme
+	Relief   Estimate // its error is that of the difference on common years
+}
+
+// NetResult describes the net result of a year, in money; a loss is negative.
+type NetResult struct {
+	Mean              Estimate
+	StandardDeviation float64  // divisor N − 1
+	OneIn10           Estimate // not reached in the worst tenth of years
+	OneIn200          Estimate
+}
+
+// TreatyFigure is what one treaty of a programme costs and gives. Money per year as placed, unless said otherwise.
+type TreatyFigure struct {
+	Terms                 treaty.Treaty
+	Premium               Estimate // base premium ceded (placed share), brokerage included; error from simulation when modelled
+	BasePremium           float64  // for 100 % of the treaty
+	RateOnLine            float64  // BasePremium / Limit; 0 for a quota share or an unlimited treaty
+	ReinstatementPremium  Estimate // expected
+	Commission            float64  // money per year
+	CommissionRate        float64  // fraction of ceded premium
+	ExpectedRecovery      Estimate
+	Margin                Estimate // premium + reinstatement premium − commission − recovery
+	Relief                Estimate // last-in: capital without this treaty − with the whole programme, first standard, money
+	AttachmentProbability Estimate // per year; 0 for a quota share
+	ExhaustionProbability Estimate
+	PricedBy              string // "quoted", "curve NAME", "commission", "minimum rate on line of curve NAME"
+}
+
+// Appraisal is everything that is said about one programme. Money per year unless said otherwise. Appraise fills the errors, the
+// reliefs of the treaties and TreatyFigure details only when asked for Detail; the plain figures are the same either way.
+type Appraisal struct {
+	Programme            treaty.Programme
+	CededPremium         Estimate
+	ExpectedRecoveries   Estimate
+	ReinstatementPremium Estimate
+	Commission           Estimate
+	CededMargin          Estimate
+	Capital              []CapitalFigure // in the order of the standards; the first drives the search
+	CapitalCost          Estimate
+	TotalCost            Estimate
+	Rent                 Estimate // per year; no value when relief ≤ 0: RentDefined is false
+	RentDefined          bool
+	OwnFundsRatio        []Estimate // own funds / net required capital, per standard; empty when own funds are not given
+	NetResult            NetResult
+	Treaties             []TreatyFigure
+	CostInfluence        []float64 // per year: the total cost's influence values, mean 0 (detail only); differences use these
+}
