@@ -115,7 +115,7 @@ type Difference struct {
 
 // Searched is the answer of the verb search.
 type Searched struct {
-	Appraised            // no cover, the start programme, the study's other programmes, and last the best found, named "best found"
+	Appraised // no cover, the start programme, the study's other programmes, and last the best found, named "best found"
 	Result    optimize.Result
 	Start     optimize.Appraisal
 	NoCover   optimize.Appraisal

@@ -1,0 +1,42 @@
+package capital
+
+import "cedewright/portfolio/sample"
+
+// Presets lists the standards that a study can name, each with its legal source and how that was known. A preset gives the measure of
+// one year's result; what else a regime asks for (other risks, formulas, transitional rules) it does not know. Law changes: the
+// responsible actuary checks the text in force.
+func Presets() []Standard {
+	return []Standard{
+		{
+			Name: "eu-one-year", Measure: ValueAtRisk, Level: level("99.5%"), Basis: Result,
+			Source: "Directive 2009/138/EC, Art. 101(3): value at risk of basic own funds, 99.5 %, one year (read in the consolidated text)",
+		},
+		{
+			Name: "swiss-one-year", Measure: TailValueAtRisk, Level: level("99%"), Basis: Result,
+			Source: "Swiss Supervision Ordinance (AVO), Art. 41: expected shortfall of the one-year change in risk-bearing capital " +
+				"(read in the text of 1 July 2015; the level of 99 % is from memory)",
+		},
+		{
+			Name: "bermuda-one-year", Measure: TailValueAtRisk, Level: level("99%"), Basis: Result,
+			Source: "Bermuda solvency capital requirement: aimed at tail value at risk, 99 %, one year (from memory, no text was read)",
+		},
+	}
+}
+
+// Preset gives the preset of that name.
+func Preset(name string) (Standard, bool) {
+	for _, s := range Presets() {
+		if s.Name == name {
+			return s, true
+		}
+	}
+	return Standard{}, false
+}
+
+func level(text string) sample.Level {
+	l, err := sample.ParseLevel(text)
+	if err != nil {
+		panic("capital: level of a preset: " + err.Error())
+	}
+	return l
+}
