@@ -1,6 +1,6 @@
 module cedewright
 
-go 1.26
+go 1.26.7
 
 require (
 	charm.land/lipgloss/v2 v2.1.0 // indirect
