@@ -72,7 +72,9 @@ type ProportionalHazard struct{ Rho float64 }
 func (d ProportionalHazard) At(s float64) float64 { return math.Pow(clamp(s), 1/d.Rho) }
 
 // String names family and parameter.
-func (d ProportionalHazard) String() string { return fmt.Sprintf("proportional hazard, ρ %.4g", d.Rho) }
+func (d ProportionalHazard) String() string {
+	return fmt.Sprintf("proportional hazard, ρ %.4g", d.Rho)
+}
 
 // Wang is g(s) = Φ(Φ⁻¹(s) + Lambda), Lambda ≥ 0 (Wang 2000).
 type Wang struct{ Lambda float64 }

@@ -1,7 +1,6 @@
 package loss
 
 import (
-	"errors"
 	"fmt"
 	"io"
 	"math"
@@ -10,6 +9,7 @@ import (
 	"strings"
 	"time"
 
+	"cedewright/portfolio/csvfile"
 	"cedewright/portfolio/fault"
 )
 
@@ -37,38 +37,29 @@ func ReadHistory(r io.Reader, file string, f HistoryFormat) ([]HistoryLoss, erro
 			wanted = append(wanted, name)
 		}
 	}
-	t, err := openCSV(r, file, wanted)
+	t, err := csvfile.Open(r, file, wanted)
 	if err != nil {
 		return nil, err
 	}
 	var losses []HistoryLoss
-	for {
-		record, err := t.next()
-		if errors.Is(err, io.EOF) {
-			break
-		} else if err != nil {
-			return nil, err
-		}
-		if record == nil {
-			continue
-		}
-		if l, ok := t.historyLoss(f); ok && l.Total > f.Minimum {
+	for t.Next() {
+		if l, ok := historyLoss(t, f); ok && l.Total > f.Minimum {
 			losses = append(losses, l)
 		}
 	}
-	if len(losses) == 0 && t.list.Len() == 0 {
-		t.add(fault.Fault{File: file, Found: "no loss above " + fmt.Sprint(f.Minimum), Allowed: "at least one loss"})
+	if len(losses) == 0 && t.Faults() == nil {
+		t.Add(fault.Fault{File: file, Found: "no loss above " + fmt.Sprint(f.Minimum), Allowed: "at least one loss"})
 	}
-	return losses, t.faults()
+	return losses, t.Faults()
 }
 
-func (t *csvTable) historyLoss(f HistoryFormat) (HistoryLoss, bool) {
+func historyLoss(t *csvfile.Table, f HistoryFormat) (HistoryLoss, bool) {
 	l := HistoryLoss{Parts: make([]float64, len(f.Parts))}
 	ok := true
 	amount := func(column string) float64 {
-		value, fine := t.number(column)
+		value, fine := t.Number(column)
 		if fine && (!(value >= 0) || math.IsInf(value, 0)) {
-			t.bad(column, t.text(column), "money of at least 0")
+			t.Bad(column, t.Text(column), "money of at least 0")
 			fine = false
 		}
 		ok = ok && fine
@@ -82,9 +73,9 @@ func (t *csvTable) historyLoss(f HistoryFormat) (HistoryLoss, bool) {
 		l.Total = amount(f.Total)
 	}
 	if f.Date != "" {
-		date, err := time.Parse(time.DateOnly, t.text(f.Date))
+		date, err := time.Parse(time.DateOnly, t.Text(f.Date))
 		if err != nil {
-			t.bad(f.Date, fmt.Sprintf("%q is not a date", t.text(f.Date)), "a date such as 1985-07-31")
+			t.Bad(f.Date, fmt.Sprintf("%q is not a date", t.Text(f.Date)), "a date such as 1985-07-31")
 			ok = false
 		}
 		l.Date = date

@@ -1,0 +1,251 @@
+package market
+
+import (
+	"math"
+	"slices"
+
+	"cedewright/portfolio/treaty"
+
+	"gonum.org/v1/gonum/mat"
+)
+
+// Settings of the free curve.
+const (
+	geometricKnots   = 60   // kinks on a geometric grid from lowestKnot to 1
+	lowestKnot       = 1e-4 // probability
+	rankKnots        = 50   // kinks at k/N for the largest k values of a book of N years
+	pseudoQuotes     = 12   // points at which the curve is pulled towards a family
+	lowestPseudo     = 0.001
+	highestPseudo    = 0.6
+	largestPseudoFit = 10
+)
+
+// pulls are the strengths of the pull that are tried, in quotes' worth of weight.
+var pulls = []float64{0, 0.3, 1, 3, largestPseudoFit}
+
+// FitFree fits the free concave curve to quotes: of all increasing concave distortions (with kinks on a fine grid) the one with the
+// least weighted sum of squared relative errors, found to the global optimum. Where no quote speaks, pseudo-quotes pull it towards the
+// better of two families (proportional hazard, Wang); the strength of the pull is the one with the least leave-one-out error.
+func FitFree(quotes []Quote, brokerage float64) (*Fit, error) {
+	used, err := checkQuotes(quotes)
+	if err != nil {
+		return nil, err
+	}
+	toward, anchor, err := betterFamily(used, brokerage)
+	if err != nil {
+		return nil, err
+	}
+	best := &Fit{LeaveOneOut: math.NaN()}
+	for _, pull := range pulls {
+		if pull == 0 && len(used) < 3 {
+			continue // nothing would hold the curve where no quote speaks
+		}
+		d, err := fitMixture(used, brokerage, anchor, pull)
+		if err != nil {
+			return nil, err
+		}
+		f := &Fit{Family: FamilyFree, Distortion: d, Pull: pull, Toward: toward}
+		f.describe(quotes, brokerage)
+		if err := f.leaveOneOut(used, func(rest []Quote) (Distortion, error) {
+			_, anchor, err := betterFamily(rest, brokerage)
+			if err != nil {
+				return nil, err
+			}
+			return fitMixture(rest, brokerage, anchor, pull)
+		}, brokerage); err != nil {
+			return nil, err
+		}
+		if best.Distortion == nil || f.LeaveOneOut < best.LeaveOneOut {
+			best = f
+		}
+	}
+	return best, nil
+}
+
+// betterFamily fits the two families that resemble real prices and gives the one with the smaller objective.
+func betterFamily(quotes []Quote, brokerage float64) (string, Distortion, error) {
+	var name string
+	var best Distortion
+	least := math.Inf(1)
+	for _, family := range []string{FamilyProportionalHazard, FamilyWang} {
+		p, err := fitParameter(family, quotes, brokerage)
+		if err != nil {
+			return "", nil, err
+		}
+		d, err := NewFamily(family, p)
+		if err != nil {
+			return "", nil, err
+		}
+		if v := objective(d, quotes, brokerage); v < least {
+			name, best, least = family, d, v
+		}
+	}
+	return name, best, nil
+}
+
+// fitMixture solves the least squares over mixtures: the prices of the parts are columns, the quotes rows, and the weights are at least 0
+// and add up to 1. Rows are made homogeneous by taking the quote from every column, after which one plain non-negative least squares
+// with the row Σw = 1 appended gives the optimum up to a factor (exact, not a penalty).
+func fitMixture(quotes []Quote, brokerage float64, anchor Distortion, pull float64) (Mixture, error) {
+	tails := knots(quotes)
+	rows := make([][]float64, 0, len(quotes)+pseudoQuotes+1)
+	for _, q := range quotes {
+		row, target := q.columns(tails, brokerage)
+		weight := math.Sqrt(q.Weight) / (q.RateOnLine * (1 - brokerage))
+		for j := range row {
+			row[j] = (row[j] - target) * weight
+		}
+		rows = append(rows, row)
+	}
+	if pull > 0 {
+		for i := range pseudoQuotes {
+			s := lowestPseudo * math.Pow(highestPseudo/lowestPseudo, float64(i)/(pseudoQuotes-1))
+			at := anchor.At(s)
+			row := []float64{1}
+			for _, t := range tails {
+				row = append(row, min(s/t, 1))
+			}
+			for j := range row {
+				row[j] = (row[j] - at) / at * math.Sqrt(pull/pseudoQuotes)
+			}
+			rows = append(rows, row)
+		}
+	}
+	columns := len(tails) + 1
+	ones := make([]float64, columns)
+	for j := range ones {
+		ones[j] = 1
+	}
+	rows = append(rows, ones)
+	a := mat.NewDense(len(rows), columns, nil)
+	for i, row := range rows {
+		a.SetRow(i, row)
+	}
+	b := make([]float64, len(rows))
+	b[len(b)-1] = 1
+	x, err := nonNegativeLeastSquares(a, b)
+	if err != nil {
+		return Mixture{}, err
+	}
+	return mixtureOf(x, tails), nil
+}
+
+// mixtureOf scales weights to add up to 1 and drops those of 0.
+func mixtureOf(x, tails []float64) Mixture {
+	total := 0.0
+	for _, w := range x {
+		total += w
+	}
+	m := Mixture{Supremum: x[0] / total}
+	for k, t := range tails {
+		if w := x[k+1] / total; w > 0 {
+			m.Knots = append(m.Knots, Knot{Tail: t, Weight: w})
+		}
+	}
+	return m
+}
+
+// knots gives the probabilities at which the curve may have kinks, rising: a geometric grid, where quotes attach and exhaust, and the
+// first ranks of the books on which own layers are priced.
+func knots(quotes []Quote) []float64 {
+	tails := []float64{1}
+	for i := range geometricKnots {
+		tails = append(tails, math.Pow(lowestKnot, float64(i)/(geometricKnots-1)))
+	}
+	for _, q := range quotes {
+		if q.Own() {
+			low, high := q.tails()
+			tails = append(tails, low, high)
+			for k := 1; k <= rankKnots; k++ {
+				tails = append(tails, float64(k)/float64(q.Years))
+			}
+		} else {
+			tails = append(tails, q.Attachment, q.Exhaustion)
+		}
+	}
+	slices.Sort(tails)
+	var distinct []float64
+	for _, t := range tails {
+		if t > 0 && t <= 1 && (len(distinct) == 0 || t > distinct[len(distinct)-1]*(1+1e-9)) {
+			distinct = append(distinct, t)
+		}
+	}
+	return distinct
+}
+
+// columns gives what the supremum and the tail values at risk at the knots ask for the quoted layer, as a fraction of its limit, and what
+// the quote pays for it after brokerage. A layer with paid reinstatements is priced at the quoted premium: the price of R − P·F, which
+// is linear in the weights for given P, must be P·(1−b).
+func (q Quote) columns(tails []float64, brokerage float64) ([]float64, float64) {
+	target := q.RateOnLine * (1 - brokerage)
+	row := make([]float64, len(tails)+1)
+	if !q.Own() {
+		row[0] = 1
+		for k, t := range tails {
+			row[k+1] = tailShape(t, q.Attachment, q.Exhaustion, q.ExpectedLoss)
+		}
+		return row, target
+	}
+	net := make([]float64, len(q.Recoveries))
+	for i, r := range q.Recoveries {
+		net[i] = r/q.Terms.Limit - q.RateOnLine*q.Terms.Reinstated(r)
+	}
+	slices.SortFunc(net, func(a, b float64) int {
+		if a > b {
+			return -1
+		}
+		if a < b {
+			return 1
+		}
+		return 0
+	})
+	if len(net) > 0 {
+		row[0] = max(net[0], 0)
+	}
+	sums := make([]float64, len(net)+1)
+	for i, x := range net {
+		sums[i+1] = sums[i] + x
+	}
+	for k, t := range tails {
+		row[k+1] = tailMean(net, sums, t*float64(q.Years), q.Years)
+	}
+	return row, target
+}
+
+// tailMean gives the mean of the largest count (not whole) of years values, of which those that are not 0 are given, largest first, with
+// their running sums. Negative values come last, after the zeros.
+func tailMean(net, sums []float64, count float64, years int) float64 {
+	positive := len(net)
+	for positive > 0 && net[positive-1] < 0 {
+		positive--
+	}
+	zeros := years - len(net)
+	whole := int(count)
+	part := count - float64(whole)
+	at := func(rank int) float64 { // value of rank from 0
+		switch {
+		case rank < positive:
+			return net[rank]
+		case rank < positive+zeros:
+			return 0
+		case rank < years:
+			return net[rank-zeros]
+		}
+		return 0
+	}
+	sum := sums[min(whole, positive)]
+	if whole > positive+zeros {
+		sum += sums[whole-zeros] - sums[positive]
+	}
+	if part > 0 {
+		sum += part * at(whole)
+	}
+	return sum / count
+}
+
+// quoted gives the terms without a price of their own, as the curve would price them.
+func (q Quote) quoted() treaty.Treaty {
+	terms := *q.Terms
+	terms.Premium = treaty.Optional{}
+	return terms
+}

@@ -1,0 +1,178 @@
+package optimize
+
+import (
+	"fmt"
+	"math"
+
+	"cedewright/portfolio/sample"
+	"cedewright/portfolio/treaty"
+)
+
+// Levels at which the net result is always reported.
+var (
+	oneIn10  = mustLevel("1 in 10")
+	oneIn200 = mustLevel("1 in 200")
+)
+
+func mustLevel(text string) sample.Level {
+	l, err := sample.ParseLevel(text)
+	if err != nil {
+		panic(fmt.Sprintf("optimize: level %q of this package is wrong: %v", text, err))
+	}
+	return l
+}
+
+// Appraise says everything about one programme. It is a pure function of the case and the programme: search, frontier, stress,
+// report and workbench all call it. Without detail the standard errors, the treaties' reliefs and CostInfluence are left at zero;
+// the other figures are the same bits with and without. A programme without treaties is no cover. It fails when the programme is
+// not valid for the book or a treaty has no price.
+func (a *Appraiser) Appraise(p treaty.Programme, detail bool) (Appraisal, error) {
+	w := a.scratch.Get().(*workspace)
+	defer a.scratch.Put(w)
+	items, err := a.items(p, w)
+	if err != nil {
+		return Appraisal{}, fmt.Errorf("appraise %q: %w", p.Name, err)
+	}
+	result := Appraisal{Programme: p, Treaties: make([]TreatyFigure, len(p.Treaties))}
+	totals := a.totals(items)
+	a.netLosses(items, w)
+	result.CededPremium.Value = totals.premium
+	result.ExpectedRecoveries.Value = totals.recovery
+	result.ReinstatementPremium.Value = totals.reinstatement
+	result.Commission.Value = totals.commission
+	result.CededMargin.Value = totals.margin()
+	a.measure(&result, totals, w)
+	for i, t := range p.Treaties {
+		result.Treaties[i] = TreatyFigure{Terms: t}
+		for _, it := range items {
+			if it.terms.Name == t.Name {
+				result.Treaties[i] = it.figure()
+			}
+		}
+	}
+	if detail {
+		if err := a.detail(&result, items, totals, w); err != nil {
+			return Appraisal{}, fmt.Errorf("appraise %q: %w", p.Name, err)
+		}
+	}
+	return result, nil
+}
+
+// totals are the expected money flows of a programme, per year, as placed.
+type totals struct{ premium, recovery, reinstatement, commission float64 }
+
+func (t totals) margin() float64 { return t.premium + t.reinstatement - t.commission - t.recovery }
+
+func (a *Appraiser) totals(items []item) totals {
+	var sum totals
+	for _, it := range items {
+		placed := it.terms.Placed()
+		premium := float64(placed * it.priced.base)
+		sum.premium += premium
+		sum.recovery += float64(placed * it.priced.recovery)
+		sum.reinstatement += float64(premium * it.priced.reinstated)
+		sum.commission += float64(premium * it.priced.commission)
+	}
+	return sum
+}
+
+// netLosses fills w.loss with −U of each year: the loss after everything that the programme pays and costs.
+func (a *Appraiser) netLosses(items []item, w *workspace) {
+	certain := 0.0
+	for _, it := range items {
+		premium := float64(it.terms.Placed() * it.priced.base)
+		certain += premium - float64(premium*it.priced.commission)
+	}
+	for y, x := range a.ungained {
+		w.loss[y] = x + certain
+	}
+	for _, it := range items {
+		placed := it.terms.Placed()
+		if it.terms.Kind == treaty.QuotaShare {
+			for y, x := range it.subject.annual {
+				w.loss[y] -= float64(placed * x)
+			}
+			continue
+		}
+		premium := float64(placed * it.priced.base)
+		w.recover(it.terms, it.subject)
+		for _, y := range w.touched {
+			r := w.annual[y]
+			w.loss[y] += float64(premium*it.terms.Reinstated(r)) - float64(placed*r)
+		}
+		w.reset()
+	}
+}
+
+// meanNet is the mean of −U, from the parts.
+func (a *Appraiser) meanNet(t totals) float64 { return a.meanLoss + a.constant + t.margin() }
+
+// measure fills capital, its cost, rent and the net result from w.loss.
+func (a *Appraiser) measure(result *Appraisal, t totals, w *workspace) {
+	mean := a.meanNet(t)
+	copy(w.sorted, w.loss)
+	tenth, _ := sample.Tail(w.sorted, oneIn10)
+	rare, _ := sample.Tail(w.sorted, oneIn200)
+	result.NetResult.Mean.Value = -mean
+	result.NetResult.OneIn10.Value = -tenth
+	result.NetResult.OneIn200.Value = -rare
+	result.NetResult.StandardDeviation = standardDeviation(w.loss, mean)
+	result.Capital = make([]CapitalFigure, len(a.c.Standards))
+	for i, s := range a.c.Standards {
+		net := s.Amount(w.sorted, mean)
+		gross := a.gross[i].figure.Value
+		result.Capital[i] = CapitalFigure{
+			Standard: s.Name,
+			Gross:    Estimate{Value: gross},
+			Net:      Estimate{Value: net},
+			Relief:   Estimate{Value: gross - net},
+		}
+		if a.c.OwnFunds > 0 {
+			ratio := math.Inf(1)
+			if net > 0 {
+				ratio = a.c.OwnFunds / net
+			}
+			result.OwnFundsRatio = append(result.OwnFundsRatio, Estimate{Value: ratio})
+		}
+	}
+	result.CapitalCost.Value = a.c.CostOfCapital * result.Capital[0].Net.Value
+	result.TotalCost.Value = result.CededMargin.Value + result.CapitalCost.Value
+	if relief := result.Capital[0].Relief.Value; relief > 0 {
+		result.Rent.Value, result.RentDefined = result.CededMargin.Value/relief, true
+	}
+}
+
+// standardDeviation has divisor N − 1; 0 for a single year.
+func standardDeviation(values []float64, mean float64) float64 {
+	if len(values) < 2 {
+		return 0
+	}
+	sum := 0.0
+	for _, v := range values {
+		sum += float64((v - mean) * (v - mean))
+	}
+	return math.Sqrt(sum / float64(len(values)-1))
+}
+
+// figure gives the plain figures of one treaty, as placed.
+func (it item) figure() TreatyFigure {
+	placed, k := it.terms.Placed(), it.priced
+	premium := float64(placed * k.base)
+	f := TreatyFigure{
+		Terms:                 it.terms,
+		Premium:               Estimate{Value: premium},
+		BasePremium:           k.base,
+		ReinstatementPremium:  Estimate{Value: premium * k.reinstated},
+		Commission:            premium * k.commission,
+		CommissionRate:        k.commission,
+		ExpectedRecovery:      Estimate{Value: placed * k.recovery},
+		AttachmentProbability: Estimate{Value: k.attachment},
+		ExhaustionProbability: Estimate{Value: k.exhaustion},
+		PricedBy:              k.by,
+	}
+	f.Margin.Value = f.Premium.Value + f.ReinstatementPremium.Value - f.Commission - f.ExpectedRecovery.Value
+	if it.terms.Kind != treaty.QuotaShare && !math.IsInf(it.terms.Limit, 1) {
+		f.RateOnLine = k.base / it.terms.Limit
+	}
+	return f
+}

@@ -1,0 +1,367 @@
+package optimize
+
+import (
+	"encoding/binary"
+	"fmt"
+	"math"
+	"slices"
+	"sync"
+
+	"cedewright/market"
+	"cedewright/portfolio/fault"
+	"cedewright/portfolio/sample"
+	"cedewright/portfolio/treaty"
+)
+
+// subjectBudget bounds the memory of remembered subjects, in bytes. Beyond it all are forgotten; results never depend on it.
+const subjectBudget = 512 << 20
+
+// pricedBudget bounds the count of remembered layers.
+const pricedBudget = 1 << 20
+
+// Appraiser appraises programmes of one case. It remembers what programmes have in common: the subject of a treaty, and price and
+// expected recovery of a layer. It is safe for concurrent use; what it remembers never changes a figure.
+type Appraiser struct {
+	c        Case
+	years    int
+	tariffs  map[string]*market.Tariff
+	premiums []float64 // by class
+	ungained []float64 // −U of each year with no cover: gross loss + expenses − premium
+	constant float64   // expenses − premium, the part of −U that is certain
+	meanLoss float64   // mean annual gross loss
+	gross    []grossCapital
+	scratch  sync.Pool // of *workspace
+
+	mu          sync.Mutex
+	subjects    map[string]*subject
+	subjectSize int
+	nextSubject int
+	priced      map[string]*priced
+}
+
+// grossCapital is required capital with no cover under one standard.
+type grossCapital struct {
+	figure    Estimate
+	influence []float64
+}
+
+// NewAppraiser prepares a case. It fails, with every fault at once, when the case is not valid.
+func NewAppraiser(c Case) (*Appraiser, error) {
+	if err := c.Validate(); err != nil {
+		return nil, err
+	}
+	t := c.Book.Table
+	a := &Appraiser{c: c, years: t.Years(), tariffs: map[string]*market.Tariff{}, subjects: map[string]*subject{}, priced: map[string]*priced{}}
+	for _, curve := range c.Curves {
+		tariff, err := market.NewTariff(curve, a.years)
+		if err != nil {
+			return nil, err
+		}
+		a.tariffs[curve.Name] = tariff
+	}
+	for _, class := range c.Book.Classes {
+		a.premiums = append(a.premiums, class.Premium)
+		a.constant -= class.Premium * (1 - class.Expenses)
+	}
+	columns := t.Columns()
+	a.ungained = make([]float64, a.years)
+	for y := range a.years {
+		sum := 0.0
+		for _, x := range columns.Loss[columns.Offset[y]:columns.Offset[y+1]] {
+			sum += x
+		}
+		a.ungained[y] = sum
+	}
+	a.meanLoss = sample.Sum(a.ungained) / float64(a.years)
+	for y := range a.ungained {
+		a.ungained[y] += a.constant
+	}
+	a.scratch.New = func() any { return newWorkspace(a.years) }
+	w := newWorkspace(a.years)
+	for _, s := range c.Standards {
+		copy(w.sorted, a.ungained)
+		influence := s.Influence(a.ungained, nil)
+		a.gross = append(a.gross, grossCapital{
+			figure:    Estimate{s.Amount(w.sorted, a.meanLoss+a.constant), sample.InfluenceError(influence)},
+			influence: influence,
+		})
+	}
+	return a, nil
+}
+
+// Case gives the case that is appraised.
+func (a *Appraiser) Case() Case { return a.c }
+
+// workspace is the scratch memory of one appraisal.
+type workspace struct {
+	loss     []float64 // −U by year, in order of years
+	sorted   []float64 // copy that selection may reorder
+	annual   []float64 // sum of layer losses by year; zero between uses
+	touched  []int32   // years in which annual is not zero
+	event    []float64 // sum of layer losses by event, for an event limit; zero between uses
+	hit      []int32   // events in which event is not zero
+	recovery []float64 // positive annual recoveries, to be sorted
+	key      []byte
+}
+
+func newWorkspace(years int) *workspace {
+	return &workspace{loss: make([]float64, years), sorted: make([]float64, years), annual: make([]float64, years)}
+}
+
+// priced is what a layer costs and pays on average, for 100 % of the treaty.
+type priced struct {
+	base       float64 // base premium, money per year; quota share: ceded premium of the full subject
+	by         string  // what set the price
+	recovery   float64 // mean annual recovery
+	reinstated float64 // mean fraction of base premium paid as reinstatement premium
+	commission float64 // quota share: fraction of ceded premium
+	attachment float64 // probability per year
+	exhaustion float64
+	modelled   bool // base premium or commission follows the curve, so it carries simulation error
+}
+
+// item is one treaty of a programme, ready to be applied.
+type item struct {
+	terms   treaty.Treaty
+	subject *subject
+	priced  *priced
+}
+
+// items resolves the placed treaties of a programme, in inuring order.
+func (a *Appraiser) items(p treaty.Programme, w *workspace) ([]item, error) {
+	order, err := p.Order()
+	if err != nil {
+		return nil, err
+	}
+	items := make([]item, 0, len(order))
+	for _, i := range order {
+		t := p.Treaties[i]
+		if t.Placed() == 0 {
+			continue
+		}
+		s := a.subjectOf(p, i, w)
+		known, err := a.price(p, i, s, w)
+		if err != nil {
+			return nil, err
+		}
+		items = append(items, item{t, s, known})
+	}
+	return items, nil
+}
+
+// recover fills w.annual with the annual recoveries at 100 % of a treaty other than a quota share, after all its annual terms, and
+// lists in w.touched the years in which layer losses arise. The caller must call w.reset afterwards.
+func (w *workspace) recover(t treaty.Treaty, s *subject) {
+	reached := s.above(t.Retention)
+	if t.Kind == treaty.RiskExcess && t.EventLimit > 0 {
+		w.recoverWithEventLimit(t, s, reached)
+	} else {
+		for i, x := range s.loss[:reached] {
+			y := s.year[i]
+			if w.annual[y] == 0 {
+				w.touched = append(w.touched, y)
+			}
+			w.annual[y] += min(x-t.Retention, t.Limit)
+		}
+	}
+	if t.Kind == treaty.AggregateExcess {
+		return
+	}
+	limit := t.AnnualRecoveryLimit()
+	if t.AnnualDeductible == 0 && math.IsInf(limit, 1) {
+		return
+	}
+	for _, y := range w.touched {
+		w.annual[y] = min(max(w.annual[y]-t.AnnualDeductible, 0), limit)
+	}
+}
+
+func (w *workspace) recoverWithEventLimit(t treaty.Treaty, s *subject, reached int) {
+	if len(w.event) < s.events {
+		w.event = make([]float64, s.events)
+	}
+	firstYear := w.hit[:0]
+	for i, x := range s.loss[:reached] {
+		e := s.event[i]
+		if w.event[e] == 0 {
+			firstYear = append(firstYear, int32(i))
+		}
+		w.event[e] += min(x-t.Retention, t.Limit)
+	}
+	for _, i := range firstYear {
+		e, y := s.event[i], s.year[i]
+		if w.annual[y] == 0 {
+			w.touched = append(w.touched, y)
+		}
+		w.annual[y] += min(w.event[e], t.EventLimit)
+		w.event[e] = 0
+	}
+	w.hit = firstYear[:0]
+}
+
+// reset clears what recover left.
+func (w *workspace) reset() {
+	for _, y := range w.touched {
+		w.annual[y] = 0
+	}
+	w.touched = w.touched[:0]
+}
+
+// price gives premium, expected recovery and probabilities of treaty i of a programme, remembered for the next time.
+func (a *Appraiser) price(p treaty.Programme, i int, s *subject, w *workspace) (*priced, error) {
+	t := p.Treaties[i]
+	subjectPremium := 0.0
+	if t.Kind == treaty.QuotaShare {
+		subjectPremium = p.SubjectPremium(i, a.c.Book.Table.Classes(), a.premiums)
+	}
+	w.key = pricedKey(w.key[:0], t, s, subjectPremium)
+	a.mu.Lock()
+	known, ok := a.priced[string(w.key)]
+	a.mu.Unlock()
+	if ok {
+		return known, nil
+	}
+	key := string(w.key)
+	var fresh *priced
+	var err error
+	if t.Kind == treaty.QuotaShare {
+		fresh, err = a.priceQuotaShare(t, s, subjectPremium)
+	} else {
+		fresh, err = a.priceExcess(t, s, w)
+	}
+	if err != nil {
+		return nil, err
+	}
+	a.mu.Lock()
+	if len(a.priced) >= pricedBudget {
+		clear(a.priced)
+	}
+	a.priced[key] = fresh
+	a.mu.Unlock()
+	return fresh, nil
+}
+
+// pricedKey writes everything on which price and recovery of a treaty at 100 % depend.
+func pricedKey(key []byte, t treaty.Treaty, s *subject, subjectPremium float64) []byte {
+	number := func(x float64) { key = binary.LittleEndian.AppendUint64(key, math.Float64bits(x)) }
+	optional := func(o treaty.Optional) {
+		if o.Given {
+			key = append(key, 1)
+			number(o.Value)
+		} else {
+			key = append(key, 0)
+		}
+	}
+	key = binary.LittleEndian.AppendUint32(key, uint32(s.number))
+	key = append(key, byte(t.Kind))
+	number(t.Retention)
+	number(t.Limit)
+	number(t.AnnualDeductible)
+	number(t.AnnualLimit)
+	number(t.EventLimit)
+	number(subjectPremium)
+	if t.Reinstatements == nil {
+		key = append(key, 0xff)
+	} else {
+		key = append(key, byte(len(t.Reinstatements)))
+		for _, c := range t.Reinstatements {
+			number(c)
+		}
+	}
+	optional(t.Premium)
+	optional(t.Commission)
+	return append(key, t.Curve...)
+}
+
+// tariff gives the price table of a treaty's curve; nil without error when its price is quoted and it names none.
+func (a *Appraiser) tariff(t treaty.Treaty, quoted bool) (*market.Tariff, error) {
+	tariff, ok := a.tariffs[t.Curve]
+	if ok || (quoted && t.Curve == "") {
+		return tariff, nil
+	}
+	if t.Curve == "" {
+		return nil, &fault.Fault{Key: t.Name, Found: "the treaty has no price", Allowed: "a curve, or a quoted premium or commission"}
+	}
+	names := make([]string, 0, len(a.c.Curves))
+	for _, c := range a.c.Curves {
+		names = append(names, c.Name)
+	}
+	return nil, &fault.Fault{Key: t.Name + ".curve", Found: fmt.Sprintf("no market curve is named %q", t.Curve), Nearest: fault.Nearest(t.Curve, names)}
+}
+
+func (a *Appraiser) priceExcess(t treaty.Treaty, s *subject, w *workspace) (*priced, error) {
+	w.recover(t, s)
+	defer w.reset()
+	known := &priced{modelled: !t.Premium.Given}
+	w.recovery = w.recovery[:0]
+	reinstated := 0.0
+	for _, y := range w.touched {
+		if r := w.annual[y]; r > 0 {
+			w.recovery = append(w.recovery, r)
+			reinstated += t.Reinstated(r)
+		}
+	}
+	n := float64(a.years)
+	known.recovery = sample.Sum(w.recovery) / n
+	known.reinstated = reinstated / n
+	known.attachment = a.yearsAmong(s.year[:s.above(t.Retention)]) / n
+	if !math.IsInf(t.Limit, 1) {
+		known.exhaustion = a.yearsAmong(s.year[:s.reaching(t.Retention+t.Limit)]) / n
+	}
+	tariff, err := a.tariff(t, t.Premium.Given)
+	if err != nil {
+		return nil, err
+	}
+	if tariff == nil {
+		known.base, known.by = t.Premium.Value, "quoted"
+		return known, nil
+	}
+	slices.SortFunc(w.recovery, func(x, y float64) int {
+		if x > y {
+			return -1
+		}
+		if x < y {
+			return 1
+		}
+		return 0
+	})
+	premium, err := tariff.BasePremium(t, w.recovery)
+	if err != nil {
+		return nil, fmt.Errorf("price of treaty %q: %w", t.Name, err)
+	}
+	known.base, known.by = premium.Base, premium.Basis
+	known.modelled = known.modelled && premium.Modelled()
+	return known, nil
+}
+
+// yearsAmong counts the distinct years of a list.
+func (a *Appraiser) yearsAmong(years []int32) float64 {
+	seen := make([]uint64, (a.years+63)/64)
+	count := 0
+	for _, y := range years {
+		if bit := uint64(1) << (y & 63); seen[y>>6]&bit == 0 {
+			seen[y>>6] |= bit
+			count++
+		}
+	}
+	return float64(count)
+}
+
+func (a *Appraiser) priceQuotaShare(t treaty.Treaty, s *subject, subjectPremium float64) (*priced, error) {
+	known := &priced{base: subjectPremium, by: "commission", recovery: s.mean}
+	tariff, err := a.tariff(t, t.Commission.Given)
+	if err != nil {
+		return nil, err
+	}
+	if t.Commission.Given {
+		known.commission = t.Commission.Value
+		return known, nil
+	}
+	commission, err := tariff.Commission(t, s.loss, subjectPremium)
+	if err != nil {
+		return nil, fmt.Errorf("price of treaty %q: %w", t.Name, err)
+	}
+	known.commission, known.modelled = commission.Rate, true
+	known.by = commission.Basis
+	return known, nil
+}
