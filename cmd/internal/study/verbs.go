@@ -1,0 +1,261 @@
+package study
+
+import (
+	"context"
+	"fmt"
+	"slices"
+
+	"cedewright/cmd/internal/settings"
+	"cedewright/optimize"
+	"cedewright/portfolio/fault"
+	"cedewright/portfolio/loss"
+	"cedewright/portfolio/sample"
+	"cedewright/portfolio/treaty"
+)
+
+// Look describes the data and the gross position.
+func (s *Study) Look(context.Context) (Look, error) {
+	gross, err := s.appraiser.Appraise(treaty.Programme{Name: settings.NoCover}, true)
+	if err != nil {
+		return Look{}, err
+	}
+	l := Look{Head: s.head, Gross: gross, Fits: s.fits}
+	table := s.book.Table
+	for i, c := range s.book.Classes {
+		l.Classes = append(l.Classes, s.classLook(c, i))
+	}
+	total := loss.Class{Name: "all classes"}
+	expenses := 0.0
+	for _, c := range s.book.Classes {
+		total.Premium += c.Premium
+		expenses += c.Premium * c.Expenses
+	}
+	if total.Premium > 0 {
+		total.Expenses = expenses / total.Premium
+	}
+	l.Total = s.classLook(total, -1)
+	for i, name := range table.Perils() {
+		annual, err := sample.New(table.Annual(-1, i))
+		if err != nil {
+			return Look{}, err
+		}
+		largest, err := sample.New(table.Largest(-1, i))
+		if err != nil {
+			return Look{}, err
+		}
+		p := PerilLook{
+			Name: name, Events: float64(table.Events(-1, i)) / float64(s.head.Years),
+			Loss:          optimize.Estimate{Value: annual.Mean(), StandardError: annual.MeanError()},
+			LargestOfBook: largest.OrderStatistic(largest.Len()),
+		}
+		for _, period := range ReturnPeriods {
+			p.LargestOneIn = append(p.LargestOneIn, quantile(largest, period))
+			p.AnnualOneIn = append(p.AnnualOneIn, quantile(annual, period))
+		}
+		l.Perils = append(l.Perils, p)
+	}
+	return l, nil
+}
+
+// quantile gives the value exceeded once in a return period of years.
+func quantile(s sample.Sample, period float64) float64 {
+	level, err := sample.ParseLevel(fmt.Sprintf("1 in %v", period))
+	if err != nil {
+		panic("study: return period: " + err.Error()) // the periods are constants
+	}
+	return s.VaR(level)
+}
+
+func (s *Study) classLook(c loss.Class, index int) ClassLook {
+	annual, err := sample.New(s.book.Table.Annual(index, -1))
+	if err != nil {
+		panic("study: a table without years: " + err.Error()) // checked on loading
+	}
+	return ClassLook{
+		Name: c.Name, Premium: c.Premium, Expenses: c.Expenses,
+		Loss: optimize.Estimate{Value: annual.Mean(), StandardError: annual.MeanError()}, SD: annual.StandardDeviation(),
+		OneIn10: quantile(annual, 10), OneIn200: quantile(annual, 200),
+		Events: float64(s.book.Table.Events(index, -1)) / float64(s.head.Years),
+	}
+}
+
+// Fit gives the curves and how they were fitted.
+func (s *Study) Fit(context.Context) (Fitted, error) {
+	if len(s.curves) == 0 {
+		at := s.settings.At(fault.Fault{Key: "market.curves", Found: "no curve", Allowed: "at least one, to be fitted"})
+		return Fitted{}, &at
+	}
+	return Fitted{Head: s.head, Curves: s.curves}, nil
+}
+
+// Appraise appraises no cover and every programme of the study.
+func (s *Study) Appraise(context.Context) (Appraised, error) {
+	programmes := append([]treaty.Programme{{Name: settings.NoCover}}, s.programmes...)
+	all, err := optimize.AppraiseAll(s.appraiser, programmes, s.options.Workers, nil)
+	if err != nil {
+		return Appraised{}, s.placed(err)
+	}
+	return s.appraised(all), nil
+}
+
+// placed gives faults of pricing, whose key starts with a treaty's name, the place of that treaty in the study.
+func (s *Study) placed(err error) error {
+	var faults fault.List
+	for _, f := range fault.All(err) {
+		for i, p := range s.settings.Programmes {
+			for j, t := range p.Treaties {
+				if f.Key == t.Name || len(f.Key) > len(t.Name) && f.Key[:len(t.Name)+1] == t.Name+"." {
+					f.Key = fmt.Sprintf("programmes[%d].treaties[%d]%s", i, j, f.Key[len(t.Name):])
+				}
+			}
+		}
+		faults.Add(s.settings.At(*f))
+	}
+	if faults.Len() == 0 {
+		return err
+	}
+	return faults.Err()
+}
+
+func (s *Study) appraised(all []optimize.Appraisal) Appraised {
+	none := all[0]
+	a := Appraised{
+		Head: s.head, CostOfCapital: s.appraiser.Case().CostOfCapital, OwnFunds: s.appraiser.Case().OwnFunds, Programmes: all,
+		Gross: GrossFigures{Capital: none.Capital, Result: none.NetResult},
+	}
+	for _, c := range s.book.Classes {
+		a.Gross.Premium += c.Premium
+		a.Gross.Expenses += c.Premium * c.Expenses
+	}
+	annual, err := sample.New(s.book.Table.Annual(-1, -1))
+	if err != nil {
+		panic("study: a table without years: " + err.Error()) // checked on loading
+	}
+	a.Gross.Loss = optimize.Estimate{Value: annual.Mean(), StandardError: annual.MeanError()}
+	against := s.reference(all)
+	for _, p := range all {
+		if p.Programme.Name != against.Programme.Name {
+			a.Differences = append(a.Differences, Difference{p.Programme.Name, against.Programme.Name, optimize.CompareCost(p, against)})
+		}
+	}
+	return a
+}
+
+// reference gives the programme against which others are compared: the one that the search starts from, or the first of the study, or no
+// cover.
+func (s *Study) reference(all []optimize.Appraisal) optimize.Appraisal {
+	if set := s.settings.Search; set != nil && set.From != "" {
+		if i := slices.IndexFunc(all, func(a optimize.Appraisal) bool { return a.Programme.Name == set.From }); i >= 0 {
+			return all[i]
+		}
+	}
+	return all[min(1, len(all)-1)]
+}
+
+// SearchOptions override the study's budget where they are not zero.
+type SearchOptions struct {
+	Seed        *uint64
+	Evaluations int
+	Generations int
+	Progress    func(optimize.Progress)
+}
+
+// Search looks for the best programme of the study's decision space. When the context ends, it gives the best so far.
+func (s *Study) Search(ctx context.Context, o SearchOptions) (Searched, error) {
+	set := s.settings.Search
+	if set == nil {
+		at := s.settings.At(fault.Fault{Key: "search", Found: "the study has no section search", Allowed: "what may vary, or a tower"})
+		return Searched{}, &at
+	}
+	space, err := s.settings.Space()
+	if err != nil {
+		return Searched{}, err
+	}
+	result, err := optimize.Search(ctx, s.appraiser, space, s.searchSettings(*set, o))
+	if err != nil {
+		return Searched{}, s.placed(err)
+	}
+	programmes := append([]treaty.Programme{{Name: settings.NoCover}}, s.programmes...)
+	all, err := optimize.AppraiseAll(s.appraiser, programmes, s.options.Workers, nil)
+	if err != nil {
+		return Searched{}, s.placed(err)
+	}
+	all = append(all, result.Best)
+	found := Searched{Appraised: s.appraised(all), Result: result, NoCover: all[0], Curves: s.curves}
+	found.Start = s.reference(all)
+	found.Notes = append(found.Notes, result.Notes...)
+	for _, k := range space.Keep {
+		found.Keep = append(found.Keep, describeKeep(k))
+	}
+	found.Space = fmt.Sprintf("%d towers cut by the search and %d treaties varied, about %.3g programmes", len(space.Towers), len(space.Vary), result.SpaceSize)
+	found.Curve, err = s.exceedance(found)
+	return found, err
+}
+
+func (s *Study) searchSettings(set settings.Search, o SearchOptions) optimize.SearchSettings {
+	given := func(c *settings.Count) int {
+		if c == nil {
+			return 0
+		}
+		return int(*c)
+	}
+	so := optimize.SearchSettings{
+		Population: given(set.Population), Generations: given(set.Generations), Evaluations: given(set.Evaluations), Patience: given(set.Patience),
+		Workers: s.options.Workers, Progress: o.Progress,
+	}
+	if set.Seed != nil {
+		so.Seed = uint64(*set.Seed)
+	}
+	if o.Seed != nil {
+		so.Seed = *o.Seed
+	}
+	if o.Evaluations > 0 {
+		so.Evaluations = o.Evaluations
+	}
+	if o.Generations > 0 {
+		so.Generations = o.Generations
+	}
+	return so
+}
+
+func describeKeep(k optimize.Keep) string {
+	text := k.Measure
+	if k.Standard != "" {
+		text += " under " + k.Standard
+	}
+	if k.AtLeast.Given {
+		text += fmt.Sprintf(" at least %v", k.AtLeast.Value)
+	}
+	if k.AtMost.Given {
+		text += fmt.Sprintf(" at most %v", k.AtMost.Value)
+	}
+	return text
+}
+
+// exceedance gives the annual loss at return periods, gross and net of the recoveries of the start programme and the best.
+func (s *Study) exceedance(found Searched) (ExceedanceCurves, error) {
+	curves := ExceedanceCurves{ReturnPeriods: ReturnPeriods}
+	gross, err := sample.New(s.book.Table.Annual(-1, -1))
+	if err != nil {
+		return curves, err
+	}
+	for _, period := range ReturnPeriods {
+		curves.Gross = append(curves.Gross, quantile(gross, period))
+	}
+	for _, a := range []optimize.Appraisal{found.Start, found.Result.Best} {
+		losses, err := s.appraiser.NetLosses(a.Programme)
+		if err != nil {
+			return curves, err
+		}
+		net, err := sample.New(losses)
+		if err != nil {
+			return curves, err
+		}
+		var at []float64
+		for _, period := range ReturnPeriods {
+			at = append(at, quantile(net, period))
+		}
+		curves.Programmes, curves.Net = append(curves.Programmes, a.Programme.Name), append(curves.Net, at)
+	}
+	return curves, nil
+}
