@@ -75,7 +75,7 @@ func FitFamily(family string, quotes []Quote, brokerage float64) (*Fit, error) {
 	f := &Fit{Family: family, Parameter: parameter, Distortion: d}
 	f.StandardError = parameterError(family, parameter, used, brokerage)
 	f.describe(quotes, brokerage)
-	if err := f.leaveOneOut(used, func(rest []Quote) (Distortion, error) {
+	if err := f.leaveOneOut(used, func(rest []Quote, _ int) (Distortion, error) {
 		p, err := fitParameter(family, rest, brokerage)
 		if err != nil {
 			return nil, err
@@ -116,7 +116,7 @@ func fitParameter(family string, quotes []Quote, brokerage float64) (float64, er
 		}
 		return objective(d, quotes, brokerage)
 	}
-	const steps = 80
+	const steps = 32
 	best, least := 0, math.Inf(1)
 	for i := range steps + 1 {
 		if v := value(float64(i) / steps); v < least {
@@ -133,12 +133,12 @@ func fitParameter(family string, quotes []Quote, brokerage float64) (float64, er
 	return at(z), nil
 }
 
-// goldenSection narrows a bracket of one minimum (Kiefer 1953) until its ends differ by 1e-11, below which values no longer tell.
+// goldenSection narrows a bracket of one minimum (Kiefer 1953) until its ends differ by 1e-9, near where rounding of values hides the rest.
 func goldenSection(f func(float64) float64, low, high float64) float64 {
 	const ratio = 0.6180339887498949
 	a, b := high-ratio*(high-low), low+ratio*(high-low)
 	fa, fb := f(a), f(b)
-	for high-low > 1e-11 {
+	for high-low > 1e-9 {
 		if fa <= fb {
 			high, b, fb = b, a, fa
 			a = high - ratio*(high-low)
@@ -219,8 +219,13 @@ func (q Quote) tails() (low, high float64) {
 	return float64(full) / float64(q.Years), float64(len(q.Recoveries)) / float64(q.Years)
 }
 
+// without gives the quotes less one.
+func without(quotes []Quote, i int) []Quote {
+	return append(append(make([]Quote, 0, len(quotes)), quotes[:i]...), quotes[i+1:]...)
+}
+
 // leaveOneOut prices each quote of weight by the fit to the others.
-func (f *Fit) leaveOneOut(used []Quote, fit func([]Quote) (Distortion, error), brokerage float64) error {
+func (f *Fit) leaveOneOut(used []Quote, fit func(rest []Quote, left int) (Distortion, error), brokerage float64) error {
 	if len(used) < 3 {
 		return nil
 	}
@@ -229,9 +234,8 @@ func (f *Fit) leaveOneOut(used []Quote, fit func([]Quote) (Distortion, error), b
 		if f.Quotes[k].Weight == 0 {
 			continue
 		}
-		rest := append(append([]Quote(nil), used[:i]...), used[i+1:]...)
+		d, err := fit(without(used, i), i)
 		i++
-		d, err := fit(rest)
 		if err != nil {
 			return err
 		}

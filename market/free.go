@@ -35,6 +35,14 @@ func FitFree(quotes []Quote, brokerage float64) (*Fit, error) {
 	if err != nil {
 		return nil, err
 	}
+	anchors := make([]Distortion, len(used)) // of the fits that leave one quote out
+	if len(used) >= 3 {
+		for i := range used {
+			if _, anchors[i], err = betterFamily(without(used, i), brokerage); err != nil {
+				return nil, err
+			}
+		}
+	}
 	best := &Fit{LeaveOneOut: math.NaN()}
 	for _, pull := range pulls {
 		if pull == 0 && len(used) < 3 {
@@ -46,12 +54,8 @@ func FitFree(quotes []Quote, brokerage float64) (*Fit, error) {
 		}
 		f := &Fit{Family: FamilyFree, Distortion: d, Pull: pull, Toward: toward}
 		f.describe(quotes, brokerage)
-		if err := f.leaveOneOut(used, func(rest []Quote) (Distortion, error) {
-			_, anchor, err := betterFamily(rest, brokerage)
-			if err != nil {
-				return nil, err
-			}
-			return fitMixture(rest, brokerage, anchor, pull)
+		if err := f.leaveOneOut(used, func(rest []Quote, left int) (Distortion, error) {
+			return fitMixture(rest, brokerage, anchors[left], pull)
 		}, brokerage); err != nil {
 			return nil, err
 		}
