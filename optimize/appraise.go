@@ -176,3 +176,22 @@ func (it item) figure() TreatyFigure {
 	}
 	return f
 }
+
+// NetLosses gives the losses of each year less the placed recoveries of a programme, in money; premiums are left out.
+func (a *Appraiser) NetLosses(p treaty.Programme) ([]float64, error) {
+	w := a.scratch.Get().(*workspace)
+	defer a.scratch.Put(w)
+	items, err := a.items(p, w)
+	if err != nil {
+		return nil, fmt.Errorf("net losses of %q: %w", p.Name, err)
+	}
+	net := make([]float64, a.years)
+	for y, x := range a.ungained {
+		net[y] = x - a.constant
+	}
+	for _, it := range items {
+		f := a.flow(it, w)
+		addScaled(net, -it.terms.Placed(), f.recovery)
+	}
+	return net, nil
+}
