@@ -152,11 +152,13 @@ func (s *Study) reference(all []optimize.Appraisal) optimize.Appraisal {
 	return all[min(1, len(all)-1)]
 }
 
-// SearchOptions override the study's budget where they are not zero.
+// SearchOptions are the budget of a search, as flags, environment and study make it; what is 0 or nil takes the default.
 type SearchOptions struct {
 	Seed        *uint64
-	Evaluations int
+	Population  int
 	Generations int
+	Evaluations int
+	Patience    int
 	Progress    func(optimize.Progress)
 }
 
@@ -192,15 +194,10 @@ func (s *Study) Search(ctx context.Context, o SearchOptions) (Searched, error) {
 	return found, err
 }
 
+// searchSettings takes the budget as the run has gathered it; what is 0 takes the default.
 func (s *Study) searchSettings(set settings.Search, o SearchOptions) optimize.SearchSettings {
-	given := func(c *settings.Count) int {
-		if c == nil {
-			return 0
-		}
-		return int(*c)
-	}
 	so := optimize.SearchSettings{
-		Population: given(set.Population), Generations: given(set.Generations), Evaluations: given(set.Evaluations), Patience: given(set.Patience),
+		Population: o.Population, Generations: o.Generations, Evaluations: o.Evaluations, Patience: o.Patience,
 		Workers: s.options.Workers, Progress: o.Progress,
 	}
 	if set.Seed != nil {
@@ -208,12 +205,6 @@ func (s *Study) searchSettings(set settings.Search, o SearchOptions) optimize.Se
 	}
 	if o.Seed != nil {
 		so.Seed = *o.Seed
-	}
-	if o.Evaluations > 0 {
-		so.Evaluations = o.Evaluations
-	}
-	if o.Generations > 0 {
-		so.Generations = o.Generations
 	}
 	return so
 }

@@ -1,0 +1,157 @@
+package cli
+
+import (
+	"bytes"
+	"context"
+	"errors"
+	"fmt"
+	"io"
+	"runtime/debug"
+	"strings"
+
+	"cedewright/cmd/internal/report"
+	"cedewright/cmd/internal/settings"
+	"cedewright/portfolio/fault"
+
+	"github.com/spf13/cobra"
+)
+
+// Exit codes.
+const (
+	done   = 0
+	failed = 1
+	wrong  = 2 // usage or study
+)
+
+// usageError is a mistake in how the command was called.
+type usageError struct{ error }
+
+// Run runs the command with these arguments and gives its exit code. It prints results to stdout, all else to stderr, and never panics.
+func Run(ctx context.Context, args []string, stdout, stderr io.Writer) (code int) {
+	defer func() {
+		if fault := recover(); fault != nil {
+			fmt.Fprintf(stderr, "cedewright: internal error, please report it with the study that caused it: %v\n%s", fault, debug.Stack())
+			code = failed
+		}
+	}()
+	root := command(ctx, stdout, stderr)
+	root.SetArgs(args)
+	root.SetOut(stdout)
+	root.SetErr(stderr)
+	err := root.ExecuteContext(ctx)
+	return tell(stderr, err)
+}
+
+// tell prints an error, every fault on a line of its own, and gives the exit code.
+func tell(stderr io.Writer, err error) int {
+	if err == nil {
+		return done
+	}
+	var usage usageError
+	faults := fault.All(err)
+	switch {
+	case len(faults) > 0:
+		for _, f := range faults {
+			fmt.Fprintf(stderr, "cedewright: %v\n", f)
+		}
+		if len(faults) > 1 {
+			fmt.Fprintf(stderr, "cedewright: %d faults\n", len(faults))
+		}
+		return wrong
+	case errors.As(err, &usage):
+		fmt.Fprintf(stderr, "cedewright: %v\n", err)
+		return wrong
+	case errors.Is(err, context.Canceled):
+		fmt.Fprintln(stderr, "cedewright: interrupted before there was a result; nothing was written")
+		return failed
+	}
+	fmt.Fprintf(stderr, "cedewright: %v\n", err)
+	return failed
+}
+
+// command builds the tree of commands.
+func command(ctx context.Context, stdout, stderr io.Writer) *cobra.Command {
+	root := &cobra.Command{
+		Use:   "cedewright",
+		Short: "Decide an insurer's reinsurance programme: what to buy, what it costs, what capital it frees",
+		Long: "cedewright reads one study of a reinsurance renewal (losses, quotes, programmes, capital standards) and says what each\n" +
+			"programme costs and frees, and which one of a decision space is best.\n\n" + report.Caution,
+		SilenceErrors: true, SilenceUsage: true,
+		Version: report.Version(),
+		Args:    unknownVerb,
+		RunE:    func(c *cobra.Command, _ []string) error { return c.Help() },
+	}
+	root.SetVersionTemplate("{{.Version}}\n")
+	root.CompletionOptions.HiddenDefaultCmd = true
+	root.SetFlagErrorFunc(func(c *cobra.Command, err error) error { return usageError{unknownFlag(c, err)} })
+	for _, v := range verbs {
+		one := &cobra.Command{
+			Use:   v.name + " STUDY",
+			Short: v.short,
+			Args:  oneStudy,
+			RunE: func(c *cobra.Command, args []string) error {
+				return runVerb(c.Context(), v, c, args[0], stdout, stderr)
+			},
+		}
+		settings.AddFlags(one.Flags())
+		one.Flags().Bool("quiet", false, "no progress on standard error")
+		if v.name == "search" {
+			settings.AddSearchFlags(one.Flags())
+		}
+		root.AddCommand(one)
+	}
+	return root
+}
+
+func oneStudy(c *cobra.Command, args []string) error {
+	switch len(args) {
+	case 1:
+		return nil
+	case 0:
+		return usageError{fmt.Errorf("%s needs the path of a study, such as configs/marram-coast.yaml", c.Name())}
+	}
+	return usageError{fmt.Errorf("%s takes one study, not %d: %q", c.Name(), len(args), args)}
+}
+
+func unknownVerb(_ *cobra.Command, args []string) error {
+	if len(args) == 0 {
+		return nil
+	}
+	names := make([]string, len(verbs))
+	for i, v := range verbs {
+		names[i] = v.name
+	}
+	text := fmt.Sprintf("no verb is named %q; there are %s", args[0], strings.Join(names, ", "))
+	if near := fault.Nearest(args[0], names); near != "" {
+		text += fmt.Sprintf("; did you mean %q?", near)
+	}
+	return usageError{errors.New(text)}
+}
+
+// unknownFlag adds the nearest flag to pflag's message.
+func unknownFlag(c *cobra.Command, err error) error {
+	name, ok := strings.CutPrefix(err.Error(), "unknown flag: --")
+	if !ok {
+		return err
+	}
+	var names []string
+	for _, field := range strings.Fields(c.Flags().FlagUsages()) {
+		if flag, ok := strings.CutPrefix(field, "--"); ok {
+			names = append(names, flag)
+		}
+	}
+	if near := fault.Nearest(name, names); near != "" {
+		return fmt.Errorf("unknown flag --%s; did you mean --%s?", name, near)
+	}
+	return fmt.Errorf("unknown flag --%s; see cedewright %s --help", name, c.Name())
+}
+
+// print writes a result whole: it is built in memory first.
+func print(stdout io.Writer, build func(io.Writer) error) error {
+	var b bytes.Buffer
+	if err := build(&b); err != nil {
+		return err
+	}
+	_, err := stdout.Write(b.Bytes())
+	return err
+}
