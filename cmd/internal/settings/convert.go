@@ -8,7 +8,6 @@ import (
 	"cedewright/portfolio/capital"
 	"cedewright/portfolio/fault"
 	"cedewright/portfolio/loss"
-	"cedewright/portfolio/sample"
 	"cedewright/portfolio/treaty"
 )
 
@@ -190,13 +189,13 @@ func (s Severity) law() (loss.Severity, error) {
 	return nil, unknownFamily(s.Family, SeverityFamilies())
 }
 
-// Rule gives the standard that the keys describe.
+// Rule gives the standard that the keys describe. Its source is the preset's as long as nothing beside the preset changes it.
 func (s Standard) Rule() capital.Standard {
 	rule := capital.Standard{Basis: capital.Result, Source: "set in the study"}
-	if preset, ok := capital.Preset(s.Preset); ok {
+	preset, ok := capital.Preset(s.Preset)
+	if ok {
 		rule = preset
 	}
-	rule.Name = s.Name
 	if m, err := capital.ParseMeasure(s.Measure); err == nil {
 		rule.Measure = m
 	}
@@ -204,8 +203,12 @@ func (s Standard) Rule() capital.Standard {
 		rule.Basis = b
 	}
 	if s.Level != nil {
-		rule.Level = sample.Level(s.Level.Level)
+		rule.Level = s.Level.Level
 	}
+	if ok && rule != preset {
+		rule.Source = "set in the study, from the preset " + preset.Name
+	}
+	rule.Name = s.Name
 	return rule
 }
 

@@ -3,7 +3,6 @@ package settings
 import (
 	"errors"
 	"fmt"
-	"math"
 	"strconv"
 	"strings"
 
@@ -16,39 +15,43 @@ type scalar interface{ parse(text string) error }
 // Money is an amount in the study's currency: a plain number, or one with k, m or bn (thousand, million, billion) behind it.
 type Money float64
 
+// units are what may stand behind money, largest first.
 var units = []struct {
 	suffix string
 	factor float64
-}{{"bn", 1e9}, {"m", 1e6}, {"k", 1e3}}
+	power  int // factor = 10^power
+}{{"bn", 1e9, 9}, {"m", 1e6, 6}, {"k", 1e3, 3}}
 
 var errMoney = errors.New("money, such as 25m, 1.5bn, 750k or a plain number")
 
 func (m *Money) parse(text string) error {
-	s, factor := text, 1.0
+	power := 0
 	for _, u := range units {
-		if rest, ok := strings.CutSuffix(s, u.suffix); ok {
-			s, factor = strings.TrimRight(rest, " "), u.factor
+		if rest, ok := strings.CutSuffix(text, u.suffix); ok {
+			text, power = strings.TrimRight(rest, " "), u.power
 			break
 		}
 	}
-	value, err := number(s)
-	if err != nil || math.IsInf(value*factor, 0) {
+	value, err := scaled(text, power)
+	if err != nil {
 		return errMoney
 	}
-	*m = Money(scaled(s, value, factor))
+	*m = Money(value)
 	return nil
 }
 
-// scaled multiplies so that 0.3m is the number nearest to 300000: the exponent is put behind the digits before they are read.
-func scaled(digits string, value, factor float64) float64 {
-	if strings.ContainsAny(digits, "eE") {
-		return value * factor
+// scaled reads a plain decimal number times a power of ten, rounded once: 1.15bn is exactly 1150000000.
+func scaled(digits string, power int) (float64, error) {
+	if power != 0 {
+		if strings.ContainsAny(digits, "eE") {
+			return 0, strconv.ErrSyntax // 1e3m is more likely a slip than a thousand millions
+		}
+		if _, err := number(digits); err != nil {
+			return 0, err
+		}
+		digits += "e" + strconv.Itoa(power)
 	}
-	exact, err := strconv.ParseFloat(digits+"e"+strconv.Itoa(int(math.Round(math.Log10(factor)))), 64)
-	if err != nil {
-		return value * factor
-	}
-	return exact
+	return number(digits)
 }
 
 // number reads a plain decimal number; NaN, infinities, hexadecimal and underscores are none.
@@ -63,14 +66,14 @@ func number(s string) (float64, error) {
 type Fraction float64
 
 func (f *Fraction) parse(text string) error {
-	s, percent := strings.CutSuffix(text, "%")
-	s = strings.TrimRight(s, " ")
-	value, err := number(s)
+	digits, percent := strings.CutSuffix(text, "%")
+	power := 0
+	if percent {
+		digits, power = strings.TrimRight(digits, " "), -2
+	}
+	value, err := scaled(digits, power)
 	if err != nil {
 		return errors.New("a fraction, such as 35% or 0.35")
-	}
-	if percent {
-		value = scaled(s, value/100, 0.01)
 	}
 	*f = Fraction(value)
 	return nil
@@ -119,6 +122,9 @@ func (l *Level) parse(text string) error {
 	level, err := sample.ParseLevel(text)
 	if err != nil || level.Float() <= 0 {
 		return errors.New("a level above 0 and below 1, such as 99.5%, 0.995 or 1 in 200")
+	}
+	if _, ok := levelText(level); !ok {
+		return errors.New("a level with fewer digits, such as 99.5%, 0.995 or 1 in 200")
 	}
 	l.Level = level
 	return nil
