@@ -34,7 +34,7 @@ var layers = []struct {
 	{"cedewright/optimize/internal/ga", nil},
 	{"cedewright/optimize", []string{"cedewright/portfolio", "cedewright/market", "cedewright/optimize/internal/ga"}},
 	{"cedewright/configs", nil},
-	{"cedewright/cmd/internal/settings", []string{"cedewright/portfolio"}},
+	{"cedewright/cmd/internal/settings", []string{"cedewright/portfolio", "cedewright/market", "cedewright/optimize"}},
 	{"cedewright/cmd/internal/study", []string{"cedewright/portfolio", "cedewright/market", "cedewright/optimize", "cedewright/cmd/internal/settings", "cedewright/configs"}},
 	{"cedewright/cmd/internal/report", []string{"cedewright/portfolio", "cedewright/market", "cedewright/optimize", "cedewright/cmd/internal/study"}},
 	{"cedewright/cmd/internal/cli", []string{"cedewright/portfolio", "cedewright/optimize", "cedewright/market", "cedewright/cmd/internal", "cedewright/configs"}},

@@ -160,7 +160,7 @@ func SearchedJSON(w io.Writer, s study.Searched) error {
 	o["evaluations"], o["generations"], o["seed"] = s.Result.Evaluations, s.Result.Generations, s.Result.Seed
 	o["book_seed"] = s.Head.Seed
 	o["status"], o["feasible"], o["polished"] = s.Result.Status.String(), s.Result.Feasible, s.Result.Polished
-	o["space"], o["keep"] = s.Space, list(s.Keep)
+	o["space"], o["keep"] = s.Space, list(keepWords(s.Keep))
 	shortfalls := make([]object, len(s.Result.Shortfalls))
 	for i, f := range s.Result.Shortfalls {
 		shortfalls[i] = object{"measure": f.Keep.Measure, "value": number(f.Value)}

@@ -24,7 +24,7 @@ const (
 
 // pictureStyle colours the marks of every picture.
 const pictureStyle = `.grid{stroke:var(--line);stroke-width:1}.tick{fill:var(--soft);font-size:12px}.axis{fill:var(--soft);font-size:13px}
-.label{fill:var(--ink);font-size:13px}.leader{stroke:var(--quiet);stroke-width:1}
+.label{fill:var(--ink);font-size:13px;paint-order:stroke;stroke:var(--page);stroke-width:4px;stroke-linejoin:round}.leader{stroke:var(--quiet);stroke-width:1}
 polyline{fill:none;stroke-width:2}.front{stroke:var(--main)}.front-point{fill:var(--main)}.own{stroke:var(--warm);stroke-dasharray:6 5}
 .diagonal{stroke:var(--quiet);stroke-dasharray:2 4}.gross{stroke:var(--quiet);stroke-dasharray:7 4}.start-line{stroke:var(--warm);stroke-dasharray:2 3}.best-line{stroke:var(--main)}
 .best{fill:var(--main)}.none{fill:none;stroke:var(--ink);stroke-width:2}.start{fill:var(--warm)}.other{fill:var(--quiet)}
@@ -71,7 +71,7 @@ func Paper(w io.Writer, s study.Searched) error {
 		Frontier:   template.HTML(frontierPicture(s)),
 		Exceedance: template.HTML(exceedancePicture(s)),
 		Figures:    sideBySide(s.Appraised, columns),
-		Keep:       s.Keep, Warnings: s.Warnings, Notes: s.Notes, LeftOut: leftOut, Caution: Caution, Inputs: s.Inputs,
+		Keep:       keepWords(s.Keep), Warnings: s.Warnings, Notes: s.Notes, LeftOut: leftOut, Caution: Caution, Inputs: s.Inputs,
 		FrontierTable: frontierTable(s),
 	}
 	for _, c := range s.Curves {

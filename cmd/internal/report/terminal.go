@@ -304,7 +304,7 @@ func PrintSearched(w io.Writer, s study.Searched) {
 		fmt.Fprint(w, "; no single move on the steps improves the best")
 	}
 	fmt.Fprintln(w, ".")
-	for _, k := range s.Keep {
+	for _, k := range keepWords(s.Keep) {
 		fmt.Fprintf(w, "Kept: %s.\n", k)
 	}
 	fmt.Fprintln(w, "\nWhat the figures leave out")

@@ -61,21 +61,25 @@ func towersPicture(currency string, all ...optimize.Appraisal) string {
 		return ""
 	}
 	var parts []string
+	columns := 1
 	for _, a := range all {
-		parts = append(parts, towerPicture(currency, a, upTo(top)))
+		columns = max(columns, len(columnsOf(a)))
+	}
+	for _, a := range all {
+		parts = append(parts, towerPicture(currency, a, upTo(top), columns))
 	}
 	return strings.Join(parts, "")
 }
 
 const (
 	blockWidth  = 74.0
-	columnWidth = 236.0
+	columnWidth = 216.0
 )
 
-func towerPicture(currency string, a optimize.Appraisal, top float64) string {
+func towerPicture(currency string, a optimize.Appraisal, top float64, room int) string {
 	columns := columnsOf(a)
-	width := marginLeft + marginRight + columnWidth*float64(max(len(columns), 1))
-	height := 430.0
+	width := marginLeft + marginRight + columnWidth*float64(room)
+	height := 460.0
 	y := moneyAxis(0, top, "loss of the event, risk or year", currency)
 	y.scale = squareRoot
 	c := &chart{width: width, height: height, y: y}

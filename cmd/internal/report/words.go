@@ -96,6 +96,25 @@ func shortfalls(s study.Searched) string {
 	return text
 }
 
+// keepWords writes constraints in words.
+func keepWords(keep []optimize.Keep) []string {
+	var list []string
+	for _, k := range keep {
+		text := k.Measure
+		if k.Standard != "" {
+			text += " under " + k.Standard
+		}
+		if k.AtLeast.Given {
+			text += " at least " + anyFigure(k.AtLeast.Value)
+		}
+		if k.AtMost.Given {
+			text += " at most " + anyFigure(k.AtMost.Value)
+		}
+		list = append(list, text)
+	}
+	return list
+}
+
 // anyFigure writes a bound whose unit is money or a fraction.
 func anyFigure(x float64) string {
 	if x > -10 && x < 10 {

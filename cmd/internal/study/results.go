@@ -121,7 +121,7 @@ type Searched struct {
 	NoCover   optimize.Appraisal
 	Curves    []CurveFit
 	Curve     ExceedanceCurves // gross, with the start programme, with the best
-	Keep      []string         // constraints in words
+	Keep      []optimize.Keep  // constraints
 	Space     string           // the decision space in words, with its size
 }
 

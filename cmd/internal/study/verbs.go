@@ -4,6 +4,7 @@ import (
 	"context"
 	"fmt"
 	"slices"
+	"strings"
 
 	"cedewright/cmd/internal/settings"
 	"cedewright/optimize"
@@ -186,10 +187,8 @@ func (s *Study) Search(ctx context.Context, o SearchOptions) (Searched, error) {
 	found := Searched{Appraised: s.appraised(all), Result: result, NoCover: all[0], Curves: s.curves}
 	found.Start = s.reference(all)
 	found.Notes = append(found.Notes, result.Notes...)
-	for _, k := range space.Keep {
-		found.Keep = append(found.Keep, describeKeep(k))
-	}
-	found.Space = fmt.Sprintf("%d towers cut by the search and %d treaties varied, about %.3g programmes", len(space.Towers), len(space.Vary), result.SpaceSize)
+	found.Keep = space.Keep
+	found.Space = describeSpace(space, result.SpaceSize)
 	found.Curve, err = s.exceedance(found)
 	return found, err
 }
@@ -209,18 +208,22 @@ func (s *Study) searchSettings(set settings.Search, o SearchOptions) optimize.Se
 	return so
 }
 
-func describeKeep(k optimize.Keep) string {
-	text := k.Measure
-	if k.Standard != "" {
-		text += " under " + k.Standard
+// describeSpace says what may change.
+func describeSpace(space optimize.Space, size float64) string {
+	count := func(n int, one, many string) string {
+		if n == 1 {
+			return one
+		}
+		return fmt.Sprintf("%d %s", n, many)
 	}
-	if k.AtLeast.Given {
-		text += fmt.Sprintf(" at least %v", k.AtLeast.Value)
+	var parts []string
+	if n := len(space.Towers); n > 0 {
+		parts = append(parts, count(n, "one tower", "towers")+" cut by the search")
 	}
-	if k.AtMost.Given {
-		text += fmt.Sprintf(" at most %v", k.AtMost.Value)
+	if n := len(space.Vary); n > 0 {
+		parts = append(parts, count(n, "one treaty", "treaties")+" varied")
 	}
-	return text
+	return strings.Join(parts, " and ") + fmt.Sprintf(", about %.2g programmes", size)
 }
 
 // exceedance gives the annual loss at return periods, gross and net of the recoveries of the start programme and the best.
