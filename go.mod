@@ -32,4 +32,5 @@ require (
 	github.com/vbauerster/cupwriter v0.0.5 // indirect
 	golang.org/x/sys v0.50.0 // indirect
 	golang.org/x/text v0.28.0 // indirect
+	pgregory.net/rapid v1.3.0 // indirect
 )
