@@ -33,11 +33,10 @@ var layers = []struct {
 	{"cedewright/market", []string{"cedewright/portfolio"}},
 	{"cedewright/optimize/internal/ga", nil},
 	{"cedewright/optimize", []string{"cedewright/portfolio", "cedewright/market", "cedewright/optimize/internal/ga"}},
-	{"cedewright/configs", nil},
 	{"cedewright/cmd/internal/settings", []string{"cedewright/portfolio", "cedewright/market", "cedewright/optimize"}},
-	{"cedewright/cmd/internal/study", []string{"cedewright/portfolio", "cedewright/market", "cedewright/optimize", "cedewright/cmd/internal/settings", "cedewright/configs"}},
+	{"cedewright/cmd/internal/study", []string{"cedewright/portfolio", "cedewright/market", "cedewright/optimize", "cedewright/cmd/internal/settings"}},
 	{"cedewright/cmd/internal/report", []string{"cedewright/portfolio", "cedewright/market", "cedewright/optimize", "cedewright/cmd/internal/study"}},
-	{"cedewright/cmd/internal/cli", []string{"cedewright/portfolio", "cedewright/optimize", "cedewright/market", "cedewright/cmd/internal", "cedewright/configs"}},
+	{"cedewright/cmd/internal/cli", []string{"cedewright/portfolio", "cedewright/optimize", "cedewright/market", "cedewright/cmd/internal"}},
 	{"cedewright/cmd/cedewright", []string{"cedewright/cmd/internal/cli"}},
 }
 
