@@ -3,6 +3,7 @@ package settings
 import (
 	"fmt"
 	"math"
+	"strings"
 
 	"cedewright/portfolio/fault"
 )
@@ -15,6 +16,7 @@ type checker struct {
 	classes   names
 	curves    names
 	standards names
+	perilsOf  names // perils of the book; broken when only its tables can tell them
 }
 
 // mostBroken bounds the keys with a fault beyond which rules are no longer looked at.
@@ -29,6 +31,8 @@ func (s Study) check(d *decoder) {
 	c.classes = c.names("book.classes", len(s.Book.Classes), func(i int) string { return s.Book.Classes[i].Name })
 	c.curves = c.names("market.curves", len(s.Market.Curves), func(i int) string { return s.Market.Curves[i].Name })
 	c.standards = c.names("capital.standards", len(s.Capital.Standards), func(i int) string { return s.Capital.Standards[i].Name })
+	perils, ok := s.perils()
+	c.perilsOf = names{list: perils, has: set(perils), broken: !ok || c.broken("book")}
 	c.book()
 	c.market()
 	c.programmes()
@@ -42,12 +46,12 @@ func (s Study) check(d *decoder) {
 type names struct {
 	list   []string
 	has    map[string]bool
-	broken bool // something in the list could not be read, so that a name may be missing
+	broken bool // the list or a name in it could not be read, so that a name may be missing
 }
 
 // names gathers the names of a list and reports those that occur twice.
 func (c *checker) names(key string, count int, name func(i int) string) names {
-	n := names{has: map[string]bool{}, broken: c.broken(key)}
+	n := names{has: map[string]bool{}, broken: c.namesBroken(key)}
 	for i := range count {
 		if name(i) != "" && n.has[name(i)] {
 			c.add(fmt.Sprintf("%s[%d].name", key, i), quoted(name(i))+" is the name of another", "names of their own")
@@ -56,6 +60,18 @@ func (c *checker) names(key string, count int, name func(i int) string) names {
 		n.list = append(n.list, name(i))
 	}
 	return n
+}
+
+// namesBroken tells whether a list, an item of it or the name of an item could not be read.
+func (c *checker) namesBroken(key string) bool {
+	for _, b := range c.d.broken {
+		rest, inside := strings.CutPrefix(b, key+"[")
+		_, rest, _ = strings.Cut(rest, "]")
+		if inside && (rest == "" || rest == ".name") || !inside && len(b) <= len(key) && related(b, key) {
+			return true
+		}
+	}
+	return false
 }
 
 // broken tells whether a fault of decoding touches a key.

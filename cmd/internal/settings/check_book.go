@@ -217,13 +217,17 @@ func (s Study) perils() (perils []string, known bool) {
 	if len(s.Book.Tables) > 0 {
 		return nil, false
 	}
-	for _, m := range s.Book.Models {
-		if !slices.Contains(perils, m.Peril) {
-			perils = append(perils, m.Peril)
+	seen := map[string]bool{}
+	add := func(name string) {
+		if !seen[name] {
+			seen[name], perils = true, append(perils, name)
 		}
 	}
-	if s.Book.Attritional != nil && !slices.Contains(perils, loss.AttritionalPeril) {
-		perils = append(perils, loss.AttritionalPeril)
+	for _, m := range s.Book.Models {
+		add(m.Peril)
+	}
+	if s.Book.Attritional != nil {
+		add(loss.AttritionalPeril)
 	}
 	return perils, true
 }

@@ -2,7 +2,6 @@ package settings
 
 import (
 	"fmt"
-	"slices"
 	"strings"
 
 	"cedewright/portfolio/capital"
@@ -85,7 +84,7 @@ func (c *checker) subject(key string, t Treaty) {
 	if t.Kind == treaty.QuotaShare.String() && !c.classes.broken {
 		premium, covered := 0.0, false
 		for _, class := range c.s.Book.Classes {
-			if len(t.Classes) == 0 || slices.Contains(t.Classes, class.Name) {
+			if len(t.Classes) == 0 || seen[class.Name] {
 				premium, covered = premium+float64(class.Premium), true
 			}
 		}
@@ -97,12 +96,10 @@ func (c *checker) subject(key string, t Treaty) {
 
 // perils checks names of perils, where the study alone can tell which there are.
 func (c *checker) perils(key string, perils []string) {
-	list, ok := c.s.perils()
-	known := names{list: list, has: set(list), broken: !ok || c.broken("book")}
 	seen := map[string]bool{}
 	for i, name := range perils {
 		at := fmt.Sprintf("%s.perils[%d]", key, i)
-		c.known(at, "peril of the book", name, known)
+		c.known(at, "peril of the book", name, c.perilsOf)
 		c.once(at, name, seen)
 	}
 }

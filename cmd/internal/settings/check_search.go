@@ -14,7 +14,7 @@ func (c *checker) search(s Search) {
 	for _, p := range c.s.Programmes {
 		list = append(list, p.Name)
 	}
-	programmes := names{list: list, has: set(list), broken: c.broken("programmes")}
+	programmes := names{list: list, has: set(list), broken: c.namesBroken("programmes")}
 	c.known("search.from", "programme", s.From, programmes)
 	if len(list) == 0 && len(s.Vary) > 0 {
 		c.add("search.vary", "no programme whose treaties could be varied", "at least one programme")
@@ -116,6 +116,9 @@ func (c *checker) tower(key string, t Tower, start Programme) {
 	terms := Treaty{Name: t.Name, Kind: t.Kind, Classes: t.Classes, Perils: t.Perils}
 	c.subject(key, terms)
 	c.known(key+".curve", "curve", t.Curve, c.curves)
+	for name, r := range map[string]MoneyRange{"retention": t.Retention, "top": t.Top} { // faults are put in the order of the file
+		c.extent(key+"."+name, moneyText(float64(r.From)), moneyText(float64(r.To)), false, r.From > r.To, true)
+	}
 	if t.Share != nil {
 		c.shares(key+".share", *t.Share)
 	}

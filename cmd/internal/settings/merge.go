@@ -17,8 +17,10 @@ func (d *decoder) pairs(n *yaml.Node, path string) [][2]*yaml.Node {
 	var own, merged [][2]*yaml.Node
 	for i := 0; i+1 < len(n.Content); i += 2 {
 		key, value := n.Content[i], n.Content[i+1]
-		if key.Kind == yaml.AliasNode {
-			key = key.Alias
+		if key.Kind == yaml.AliasNode { // the text of the anchor, in its own place
+			here := *key.Alias
+			here.Line, here.Column = key.Line, key.Column
+			key = &here
 		}
 		switch {
 		case key.Kind != yaml.ScalarNode:
