@@ -76,7 +76,7 @@ func FitFamily(family string, quotes []Quote, brokerage float64) (*Fit, error) {
 	f.StandardError = parameterError(family, parameter, used, brokerage)
 	f.describe(quotes, brokerage)
 	if err := f.leaveOneOut(used, func(rest []Quote, _ int) (Distortion, error) {
-		p, err := fitParameter(family, rest, brokerage)
+		p, err := refitParameter(family, parameter, rest, brokerage)
 		if err != nil {
 			return nil, err
 		}
@@ -97,40 +97,67 @@ func objective(d Distortion, quotes []Quote, brokerage float64) float64 {
 	return sum
 }
 
-// fitParameter looks on a grid, even in the logarithm of the distance from the neutral parameter, and refines the best place by golden
-// section.
+// A parameter is searched over z in 0 to 1, even in the logarithm of its distance from the neutral parameter.
+const leastDistance = 1e-4
+
+func (r ParameterRange) at(z float64) float64 {
+	return min(r.Low+(r.High-r.Low)*(math.Pow(1/leastDistance, z)-1)/(1/leastDistance-1), r.High)
+}
+
+func (r ParameterRange) place(parameter float64) float64 {
+	return math.Log1p((parameter-r.Low)/(r.High-r.Low)*(1/leastDistance-1)) / math.Log(1/leastDistance)
+}
+
+// parameterSteps is the count of grid steps on which the neighbourhood of the best parameter is looked for.
+const parameterSteps = 32
+
+// fitParameter looks on a grid and refines the best place by golden section.
 func fitParameter(family string, quotes []Quote, brokerage float64) (float64, error) {
 	bounds, ok := parameterRanges[family]
 	if !ok {
 		_, err := NewFamily(family, 0)
 		return 0, err
 	}
-	at := func(z float64) float64 { // z in 0..1 to the parameter
-		const least = 1e-4
-		return min(bounds.Low+(bounds.High-bounds.Low)*(math.Pow(1/least, z)-1)/(1/least-1), bounds.High)
-	}
-	value := func(z float64) float64 {
-		d, err := NewFamily(family, at(z))
-		if err != nil {
-			return math.Inf(1)
-		}
-		return objective(d, quotes, brokerage)
-	}
-	const steps = 32
+	value := valueOf(family, bounds, quotes, brokerage)
 	best, least := 0, math.Inf(1)
-	for i := range steps + 1 {
-		if v := value(float64(i) / steps); v < least {
+	for i := range parameterSteps + 1 {
+		if v := value(float64(i) / parameterSteps); v < least {
 			best, least = i, v
 		}
 	}
 	if math.IsInf(least, 1) {
 		return 0, fmt.Errorf("market: fit of the family %s: no parameter prices the quotes", family)
 	}
-	z := goldenSection(value, max(float64(best-1)/steps, 0), min(float64(best+1)/steps, 1))
+	z := goldenSection(value, max(float64(best-1)/parameterSteps, 0), min(float64(best+1)/parameterSteps, 1))
 	if value(z) > least {
-		z = float64(best) / steps
+		z = float64(best) / parameterSteps
 	}
-	return at(z), nil
+	return bounds.at(z), nil
+}
+
+// refitParameter does the same for quotes that differ little from those to which a parameter was fitted: it looks near that parameter first,
+// and everywhere only when the best place is not inside.
+func refitParameter(family string, fitted float64, quotes []Quote, brokerage float64) (float64, error) {
+	bounds := parameterRanges[family]
+	value := valueOf(family, bounds, quotes, brokerage)
+	const near = 0.5 / parameterSteps
+	low, high := max(bounds.place(fitted)-near, 0), min(bounds.place(fitted)+near, 1)
+	z := goldenSection(value, low, high)
+	if z-low < 1e-6 && low > 0 || high-z < 1e-6 && high < 1 {
+		return fitParameter(family, quotes, brokerage)
+	}
+	return bounds.at(z), nil
+}
+
+// valueOf gives the objective as a function of z; infinite where the family has no member.
+func valueOf(family string, bounds ParameterRange, quotes []Quote, brokerage float64) func(z float64) float64 {
+	return func(z float64) float64 {
+		d, err := NewFamily(family, bounds.at(z))
+		if err != nil {
+			return math.Inf(1)
+		}
+		return objective(d, quotes, brokerage)
+	}
 }
 
 // goldenSection narrows a bracket of one minimum (Kiefer 1953) until its ends differ by 1e-9, near where rounding of values hides the rest.

@@ -11,7 +11,7 @@ import (
 
 // Settings of the free curve.
 const (
-	geometricKnots   = 60   // kinks on a geometric grid from lowestKnot to 1
+	geometricKnots   = 120  // kinks on a geometric grid from lowestKnot to 1
 	lowestKnot       = 1e-4 // probability
 	rankKnots        = 50   // kinks at k/N for the largest k values of a book of N years
 	pseudoQuotes     = 12   // points at which the curve is pulled towards a family
@@ -31,14 +31,15 @@ func FitFree(quotes []Quote, brokerage float64) (*Fit, error) {
 	if err != nil {
 		return nil, err
 	}
-	toward, anchor, err := betterFamily(used, brokerage)
+	parameters := map[string]float64{}
+	toward, anchor, err := betterFamily(used, brokerage, parameters)
 	if err != nil {
 		return nil, err
 	}
 	anchors := make([]Distortion, len(used)) // of the fits that leave one quote out
 	if len(used) >= 3 {
 		for i := range used {
-			if _, anchors[i], err = betterFamily(without(used, i), brokerage); err != nil {
+			if _, anchors[i], err = betterFamily(without(used, i), brokerage, parameters); err != nil {
 				return nil, err
 			}
 		}
@@ -66,13 +67,22 @@ func FitFree(quotes []Quote, brokerage float64) (*Fit, error) {
 	return best, nil
 }
 
-// betterFamily fits the two families that resemble real prices and gives the one with the smaller objective.
-func betterFamily(quotes []Quote, brokerage float64) (string, Distortion, error) {
+// betterFamily fits the two families that resemble real prices and gives the one with the smaller objective. It starts from the parameters
+// that it finds in the map, if any, and else notes there what it fitted.
+func betterFamily(quotes []Quote, brokerage float64, parameters map[string]float64) (string, Distortion, error) {
 	var name string
 	var best Distortion
 	least := math.Inf(1)
 	for _, family := range []string{FamilyProportionalHazard, FamilyWang} {
-		p, err := fitParameter(family, quotes, brokerage)
+		start, ok := parameters[family]
+		var p float64
+		var err error
+		if ok {
+			p, err = refitParameter(family, start, quotes, brokerage)
+		} else {
+			p, err = fitParameter(family, quotes, brokerage)
+			parameters[family] = p
+		}
 		if err != nil {
 			return "", nil, err
 		}
@@ -115,34 +125,44 @@ func fitMixture(quotes []Quote, brokerage float64, anchor Distortion, pull float
 			rows = append(rows, row)
 		}
 	}
-	columns := len(tails) + 1
-	ones := make([]float64, columns)
-	for j := range ones {
-		ones[j] = 1
-	}
-	rows = append(rows, ones)
-	a := mat.NewDense(len(rows), columns, nil)
-	for i, row := range rows {
-		a.SetRow(i, row)
-	}
-	b := make([]float64, len(rows))
-	b[len(b)-1] = 1
-	x, err := nonNegativeLeastSquares(a, b)
+	x, err := solveMixture(rows)
 	if err != nil {
 		return Mixture{}, err
 	}
 	return mixtureOf(x, tails), nil
 }
 
-// mixtureOf scales weights to add up to 1 and drops those of 0.
-func mixtureOf(x, tails []float64) Mixture {
+// solveMixture gives the weights, at least 0, in sum 1, that minimise the sum of squares of homogeneous rows.
+func solveMixture(rows [][]float64) ([]float64, error) {
+	columns := len(rows[0])
+	a := mat.NewDense(len(rows)+1, columns, nil)
+	for i, row := range rows {
+		a.SetRow(i, row)
+	}
+	for j := range columns {
+		a.Set(len(rows), j, 1)
+	}
+	b := make([]float64, len(rows)+1)
+	b[len(rows)] = 1
+	x, err := nonNegativeLeastSquares(a, b)
+	if err != nil {
+		return nil, err
+	}
 	total := 0.0
 	for _, w := range x {
 		total += w
 	}
-	m := Mixture{Supremum: x[0] / total}
+	for j := range x {
+		x[j] /= total
+	}
+	return x, nil
+}
+
+// mixtureOf drops weights of 0.
+func mixtureOf(x, tails []float64) Mixture {
+	m := Mixture{Supremum: x[0]}
 	for k, t := range tails {
-		if w := x[k+1] / total; w > 0 {
+		if w := x[k+1]; w > 0 {
 			m.Knots = append(m.Knots, Knot{Tail: t, Weight: w})
 		}
 	}

@@ -119,6 +119,9 @@ func distortedShape(d Distortion, a, e, m float64) float64 {
 		return (m + g.Iota) / (1 + g.Iota)
 	}
 	c := shapePower(a, e, m)
+	if h, ok := d.(ProportionalHazard); ok && e == 0 { // exact: the power of a power
+		return math.Pow(a, 1/h.Rho) / (c/h.Rho + 1)
+	}
 	return integrateUnit(func(x float64) float64 { return d.At(e + (a-e)*math.Pow(x, c)) })
 }
 
