@@ -113,4 +113,3 @@ func TestReliefsOfTreaties(t *testing.T) {
 		t.Error("relief is not gross less net")
 	}
 }
-

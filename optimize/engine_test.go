@@ -18,6 +18,9 @@ import (
 // The books and programmes below are drawn from a seed, so that a failure repeats; losses sit on a coarse grid, so that ties, exact
 // hits of a retention and zeros are common.
 
+// newRand gives a stream of random numbers of its own for a seed.
+func newRand(seed uint64) *rand.Rand { return rand.New(rand.NewPCG(seed, 1)) }
+
 func randomCase(t testing.TB, r *rand.Rand) Case {
 	t.Helper()
 	classes := []string{"a", "b", "c"}[:1+r.IntN(3)]

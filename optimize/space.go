@@ -98,8 +98,8 @@ type Tower struct {
 	Template       treaty.Treaty // kind (event- or risk-excess), subject, curve and annual terms of every layer
 	Replaces       []string      // treaties of the start programme that the tower takes the place of
 	Layers         int           // at most
-	Retention      Range         // money; its step is Step
-	Top            Range         // money; its step is Step
+	Retention      Range         // money; stepped by Step, whatever its own step is
+	Top            Range         // money; likewise
 	Step           float64       // money between possible cuts
 	Share          Range         // of each layer
 	Reinstatements *ReinstatementRange
@@ -204,8 +204,8 @@ func (t Tower) check(faults *fault.List, key string) {
 		faults.Add(fault.Fault{Key: key + ".step", Found: fmt.Sprint(t.Step), Allowed: "money above 0"})
 		return
 	}
-	t.Retention.check(faults, key+".retention", 0, math.MaxFloat64)
-	t.Top.check(faults, key+".top", 0, math.MaxFloat64)
+	Range{t.Retention.From, t.Retention.To, t.Step}.check(faults, key+".retention", 0, math.MaxFloat64)
+	Range{t.Top.From, t.Top.To, t.Step}.check(faults, key+".top", 0, math.MaxFloat64)
 	t.Share.check(faults, key+".share", 0, 1)
 	if t.Top.From <= t.Retention.To-t.Step*1e-9 && t.Top.To <= t.Retention.From {
 		faults.Add(fault.Fault{Key: key + ".top", Found: fmt.Sprintf("%v, not above the lowest retention %v", t.Top.To, t.Retention.From), Allowed: "a top above the retention"})
