@@ -20,10 +20,11 @@ type unit struct {
 
 var moneyUnits = []unit{{1e9, "bn"}, {1e6, "m"}, {1e3, "k"}, {1, ""}}
 
-// unitFor chooses the unit of an amount: the largest not above it, so that it reads with one to three digits before the point.
+// unitFor chooses the unit of an amount: the largest not above it once it is rounded to four digits, so that it reads with one to three
+// digits before the point.
 func unitFor(x float64) unit {
 	for _, u := range moneyUnits {
-		if math.Abs(x) >= u.factor {
+		if math.Abs(x) >= 0.99995*u.factor {
 			return u
 		}
 	}
