@@ -302,8 +302,12 @@ func TestSelect(t *testing.T) {
 			}
 			return v
 		},
-		"equal":  func(n int) []float64 { return make([]float64, n) },
-		"rising": func(n int) []float64 { v := make([]float64, n); fill(v, func(i int) float64 { return float64(i) }); return v },
+		"equal": func(n int) []float64 { return make([]float64, n) },
+		"rising": func(n int) []float64 {
+			v := make([]float64, n)
+			fill(v, func(i int) float64 { return float64(i) })
+			return v
+		},
 		"falling": func(n int) []float64 {
 			v := make([]float64, n)
 			fill(v, func(i int) float64 { return float64(-i) })
