@@ -4,40 +4,58 @@ import (
 	"fmt"
 	"math"
 	"slices"
+	"strconv"
 	"strings"
 	"testing"
+
+	"cedewright/portfolio/portfoliotest"
 
 	"gonum.org/v1/gonum/stat/distuv"
 	"pgregory.net/rapid"
 )
 
-// TestPointValues: published values of this project, section 3, computed from the formulas.
+// distortionOf gives the distortion that a published case names.
+func distortionOf(t testing.TB, name string) Distortion {
+	t.Helper()
+	family, x := strings.Fields(name)[0], portfoliotest.Numbers(name)
+	if family == "two" {
+		return twoFactor{x[0], x[1]}
+	}
+	d, err := NewFamily(family, x[0])
+	if err != nil {
+		t.Fatal(err)
+	}
+	return d
+}
+
+// TestPointValues: testdata/published, table distortion.
 func TestPointValues(t *testing.T) {
-	for _, c := range []struct {
-		d    Distortion
-		want [4]float64 // at .001, .01, .1, .5
-	}{
-		{Wang{0.25}, [4]float64{.0022540346, .0189308943, .1511411200, .5987063257}},
-		{Wang{0.5}, [4]float64{.0047955592, .0338989391, .2172390804, .6914624613}},
-		{ProportionalHazard{1.5}, [4]float64{.01, .0464158883, .2154434690, .6299605249}},
-		{DualPower{3}, [4]float64{.002997001, .029701, .271, .875}},
-		{TailValueAtRisk{0.9}, [4]float64{.01, .1, 1, 1}},
-		{ConstantCostOfCapital{0.1}, [4]float64{.101 / 1.1, .11 / 1.1, .2 / 1.1, .6 / 1.1}},
-	} {
-		for i, s := range []float64{.001, .01, .1, .5} {
-			if got := c.d.At(s); math.Abs(got-c.want[i]) > 1e-10 { // printed with ten digits
-				t.Errorf("%v at %v: %.12g, want %.12g", c.d, s, got, c.want[i])
-			}
+	for _, p := range portfoliotest.PublishedValues(t, "..", "distortion") {
+		s, err := strconv.ParseFloat(p.Quantity, 64)
+		if err != nil {
+			continue // not a point
 		}
-		if c.d.At(0) != 0 || c.d.At(1) != 1 {
-			t.Errorf("%v: g(0) = %v, g(1) = %v", c.d, c.d.At(0), c.d.At(1))
-		}
-		if err := Check(c.d); err != nil {
-			t.Errorf("%v: %v", c.d, err)
+		d := distortionOf(t, p.Case)
+		if got := d.At(s); math.Abs(got-p.Value) > 1e-9 { // printed with ten digits
+			t.Errorf("%s at %v: %.12g, want %.12g", p.Case, s, got, p.Value)
 		}
 	}
-	if r := (ConstantCostOfCapital{0.1}).At(0.05); math.Abs(r-.1363636364) > 1e-10 {
-		t.Errorf("loss on line 5 %% at 10 %%: %v", r)
+	for _, family := range FamilyNames() {
+		for _, x := range []float64{1.5, 3} {
+			if family == FamilyTailValueAtRisk {
+				x /= 10
+			}
+			d, err := NewFamily(family, x)
+			if err != nil {
+				t.Fatal(err)
+			}
+			if d.At(0) != 0 || d.At(1) != 1 {
+				t.Errorf("%v: g(0) = %v, g(1) = %v", d, d.At(0), d.At(1))
+			}
+			if err := Check(d); err != nil {
+				t.Errorf("%v: %v", d, err)
+			}
+		}
 	}
 }
 
@@ -59,12 +77,7 @@ func (squareDistortion) String() string       { return "square" }
 
 func TestCheckRefuses(t *testing.T) {
 	d := twoFactor{0.453, 5}
-	// Point values of section 3, computed.
-	for _, c := range [][2]float64{{.001, .0230648169}, {.01, .0599483722}, {.05, .1433994041}, {.1, .2225473095}} {
-		if got := d.At(c[0]); math.Abs(got-c[1]) > 1e-8 {
-			t.Errorf("two-factor curve at %v: %v, want %v", c[0], got, c[1])
-		}
-	}
+	end := portfoliotest.Find(t, portfoliotest.PublishedValues(t, "..", "distortion"), "two factors 0.453 5", "concave below").Value
 	err := Check(d)
 	if err == nil {
 		t.Fatal("the two-factor curve was accepted")
@@ -73,9 +86,9 @@ func TestCheckRefuses(t *testing.T) {
 	if _, scan := fmt.Sscanf(err.Error()[strings.Index(err.Error(), "probability")+len("probability "):], "%f", &at); scan != nil {
 		t.Fatalf("%v names no probability", err)
 	}
-	// It is concave only for s < .9037934 (computed); the grid of the check has steps of 0.0004 there.
-	if math.Abs(at-.9037934) > 2e-3 || !strings.Contains(err.Error(), "not concave") {
-		t.Errorf("%v, want: not concave from .9037934", err)
+	// The grid of the check has steps of 0.0004 there.
+	if math.Abs(at-end) > 2e-3 || !strings.Contains(err.Error(), "not concave") {
+		t.Errorf("%v, want: not concave from %v", err, end)
 	}
 	if err := Check(squareDistortion{}); err == nil {
 		t.Error("a convex curve was accepted")
@@ -104,46 +117,25 @@ func layerPrice(d Distortion, survival func(float64) float64, attachment, limit 
 	return sum * limit / n
 }
 
-// TestLayerPrices: published values of this project, section 3, computed by closed form and by quadrature.
+// TestLayerPrices: testdata/published, table layer price.
 func TestLayerPrices(t *testing.T) {
-	exponential := func(x float64) float64 { return math.Exp(-x / 1000) }
-	lomax := func(x float64) float64 { return math.Pow(2000/(2000+x), 3) }
-	for _, c := range []struct {
-		name                string
-		survival            func(float64) float64
-		limit, attachment   float64
-		el, ph, dual, wangp float64
-	}{
-		{"exponential", exponential, 1000, 0, 632.120559, 678.482150, 831.908759, 782.01546},
-		{"exponential", exponential, 1000, 1000, 232.544158, 294.867127, 406.578494, 404.270917},
-		{"exponential", exponential, 1000, 2000, 85.548215, 128.148725, 163.177986, 190.843094},
-		{"exponential", exponential, 5000, 5000, 6.692547, 18.316181, 13.362395, 28.191204},
-		{"Lomax", lomax, 1000, 0, 555.555556, 607.558595, 763.786008, 718.261530},
-		{"Lomax", lomax, 3000, 2000, 168.367347, 267.776908, 324.996281, 405.402297},
-		{"Lomax", lomax, 10000, 10000, 19.513315, 54.175013, 38.977673, 83.644794},
-	} {
-		for _, v := range []struct {
-			d    Distortion
-			want float64
-		}{{ProportionalHazard{1}, c.el}, {ProportionalHazard{1.2}, c.ph}, {DualPower{2}, c.dual}, {Wang{0.5}, c.wangp}} {
-			// 2e-5: the midpoint rule at the infinite slope of g at s = 1, where x is near 0.
-			if got := layerPrice(v.d, c.survival, c.attachment, c.limit); math.Abs(got/v.want-1) > 2e-5 {
-				t.Errorf("%s %v xs %v, %v: %.6f, want %.6f", c.name, c.limit, c.attachment, v.d, got, v.want)
-			}
-		}
-	}
-	// Lognormal with mean 1000 and cv .5: Wang's transform shifts μ by λσ.
-	mu, sigma := 6.7961835033, 0.4723807271
-	survival := func(x float64) float64 { return normalSurvival((math.Log(x) - mu) / sigma) }
-	for _, c := range [][3]float64{{500, 1000, 175.447867}, {500, 1500, 68.186989}, {1000, 2000, 35.400121}} {
-		if got := layerPrice(Wang{0.3}, survival, c[1], c[0]); math.Abs(got/c[2]-1) > 1e-6 {
-			t.Errorf("lognormal %v xs %v: %v, want %v", c[0], c[1], got, c[2])
+	for _, p := range portfoliotest.PublishedValues(t, "..", "layer price") {
+		x, q := portfoliotest.Numbers(p.Case), portfoliotest.Numbers(p.Quantity)
+		survival := map[string]func(float64) float64{
+			"exponential": func(v float64) float64 { return math.Exp(-v / x[0]) },
+			"lomax":       func(v float64) float64 { return math.Pow(x[1]/(x[1]+v), x[0]) },
+			"lognormal":   func(v float64) float64 { return normalSurvival((math.Log(v) - x[0]) / x[1]) },
+		}[strings.Fields(p.Case)[0]]
+		d := distortionOf(t, strings.Join(strings.Fields(p.Quantity)[3:], " "))
+		// 2e-5: the midpoint rule at the infinite slope of g at s = 1, where the loss is near 0.
+		if got := layerPrice(d, survival, q[1], q[0]); math.Abs(got/p.Value-1) > 2e-5 {
+			t.Errorf("%s %s: %.6f, want %.6f", p.Case, p.Quantity, got, p.Value)
 		}
 	}
 }
 
-// TestPriceOfSample: the aggregate layer 10 xs 5 of the compound Poisson(4) distribution with severities 1, 2, 3 (published values of this
-// project, section 5, after the example of Kaas et al.), on a sample that holds every value as often as its probability says.
+// TestPriceOfSample: the aggregate layer 10 xs 5 of the compound Poisson(4) distribution with severities 1, 2, 3 (testdata/published, tables panjer and
+// aggregate layer), on a sample that holds every value as often as its probability says.
 func TestPriceOfSample(t *testing.T) {
 	const n = 1_000_000
 	severity := map[int]float64{1: .25, 2: .5, 3: .25}
@@ -153,6 +145,14 @@ func TestPriceOfSample(t *testing.T) {
 		for x, p := range severity {
 			if x <= s {
 				f[s] += 4 / float64(s) * float64(x) * p * f[s-x] // Panjer's recursion
+			}
+		}
+	}
+	for _, p := range portfoliotest.PublishedValues(t, "..", "panjer") {
+		if strings.HasPrefix(p.Case, "poisson 4") {
+			k, err := strconv.Atoi(p.Quantity[1:])
+			if err != nil || math.Abs(f[k]-p.Value) > 1e-10 {
+				t.Errorf("%s: %v, want %v (%v)", p.Quantity, f[k], p.Value, err)
 			}
 		}
 	}
@@ -166,20 +166,22 @@ func TestPriceOfSample(t *testing.T) {
 	}
 	slices.Sort(layer)
 	slices.Reverse(layer)
-	for _, c := range []struct {
-		d    Distortion
-		want float64
-	}{
-		{ProportionalHazard{1.25}, 4.0259157261}, {Wang{0.3}, 4.2911555425}, {DualPower{2}, 5.1423639135}, {TailValueAtRisk{0.9}, 9.7499234295},
-		{ConstantCostOfCapital{0.1}, 3.9445429404}, {Mixture{Knots: []Knot{{0.5, 0.8}, {0.05, 0.2}}}, 6.8485302794},
-	} {
-		tariff, err := NewTariff(Curve{Name: "c", Distortion: c.d}, n)
+	for _, p := range portfoliotest.PublishedValues(t, "..", "aggregate layer 10 xs 5") {
+		tariff, err := NewTariff(Curve{Name: "c", Distortion: distortionOf(t, p.Quantity)}, n)
 		if err != nil {
 			t.Fatal(err)
 		}
-		if got := tariff.Price(layer); math.Abs(got/c.want-1) > 1e-5 { // counts are rounded to a millionth
-			t.Errorf("%v: %.8f, want %.8f", c.d, got, c.want)
+		if got := tariff.Price(layer); math.Abs(got/p.Value-1) > 1e-5 { // counts are rounded to a millionth
+			t.Errorf("%s: %.8f, want %.8f", p.Quantity, got, p.Value)
 		}
+	}
+	// A mixture is priced as the mixture of its parts (computed on the same distribution).
+	tariff, err := NewTariff(Curve{Name: "c", Distortion: Mixture{Knots: []Knot{{0.5, 0.8}, {0.05, 0.2}}}}, n)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if got := tariff.Price(layer); math.Abs(got/6.8485302794-1) > 1e-5 {
+		t.Errorf("mixture: %v", got)
 	}
 }
 

@@ -10,6 +10,7 @@ import (
 	"strings"
 	"testing"
 
+	"cedewright/portfolio/portfoliotest"
 	"cedewright/portfolio/treaty"
 
 	"pgregory.net/rapid"
@@ -292,20 +293,21 @@ func TestFitIgnoresOrder(t *testing.T) {
 	})
 }
 
-// TestCatastropheBonds: 1999–2000 catastrophe bonds (Lane 2000, ASTIN Bulletin 30(2); all figures from memory) as plain input: the free curve fits
-// them better than any family.
+// TestCatastropheBonds: catastrophe bonds of 1999–2000 (testdata/published, table catastrophe bond; the figures are from memory) as plain input: the
+// free curve fits them better than any family, and the two-factor curve prices them as published values say.
 func TestCatastropheBonds(t *testing.T) {
 	var quotes []Quote
-	for _, b := range []struct {
-		name                   string
-		spread, el, first, end float64
-	}{
-		{"Mosaic 2A", 4.06, .42, 1.15, .04}, {"Mosaic 2B", 8.36, 2.84, 5.25, 1.15}, {"Halyard Re", 4.56, .63, .84, .45}, {"Domestic Re", 3.74, .50, .58, .44},
-		{"Concentric Re", 3.14, .42, .62, .24}, {"Juno Re", 4.26, .45, .60, .33}, {"Residential Re", 3.71, .44, .76, .26}, {"Kelvin 1st event", 10.97, 4.44, 12.10, .50},
-		{"Kelvin 2nd event", 4.82, .22, 1.55, .07}, {"Gold Eagle A", 2.99, .17, .17, .17}, {"Gold Eagle B", 5.48, .63, .78, .49}, {"Namazu Re", 4.56, .75, 1.00, .32},
-		{"Atlas Re A", 2.74, .11, .19, .05}, {"Atlas Re B", 3.75, .23, .29, .19}, {"Atlas Re C", 14.19, 3.24, 5.47, 1.90}, {"Seismic", 4.56, .73, 1.13, .47},
-	} {
-		quotes = append(quotes, Quote{Curve: "bonds", Name: b.name, Weight: 1, RateOnLine: b.spread / 100, Attachment: b.first / 100, Exhaustion: b.end / 100, ExpectedLoss: b.el / 100})
+	values := portfoliotest.PublishedValues(t, "..", "catastrophe bond")
+	for _, v := range values {
+		if v.Quantity != "spread" {
+			continue
+		}
+		percent := func(quantity string) float64 { return portfoliotest.Find(t, values, v.Case, quantity).Value / 100 }
+		q := Quote{Curve: "bonds", Name: v.Case, Weight: 1, RateOnLine: v.Value / 100, Attachment: percent("attachment"), Exhaustion: percent("exhaustion"), ExpectedLoss: percent("expected loss")}
+		if got, want := q.rate(twoFactor{0.453, 5}, 0), percent("two factors 0.453 5"); math.Abs(got-want) > 6e-5 { // printed with two decimals
+			t.Errorf("%s: two-factor price %.4f %%, want %.2f %%", q.Name, 100*got, 100*want)
+		}
+		quotes = append(quotes, q)
 	}
 	free, err := FitFree(quotes, 0)
 	if err != nil {
@@ -318,14 +320,6 @@ func TestCatastropheBonds(t *testing.T) {
 		}
 		if f.InSample < free.InSample {
 			t.Errorf("%s fits to %.3f, the free curve to %.3f", family, f.InSample, free.InSample)
-		}
-	}
-	// The two-factor curve with λ .453 and 5 degrees of freedom prices these bonds so (computed here and elsewhere; six of the first seven
-	// agree with figures remembered from the paper).
-	want := []float64{3.76, 10.15, 4.82, 4.36, 4.01, 4.15, 4.08, 12.61, 2.77, 2.81, 4.82, 5.21, 2.35, 3.15, 11.01, 5.13}
-	for i, q := range quotes {
-		if got := 100 * q.rate(twoFactor{0.453, 5}, 0); math.Abs(got-want[i]) > 0.006 { // printed with two decimals
-			t.Errorf("%s: two-factor price %.4f, want %.2f", q.Name, got, want[i])
 		}
 	}
 }

@@ -9,6 +9,7 @@ import (
 	"strings"
 	"testing"
 
+	"cedewright/portfolio/portfoliotest"
 	"cedewright/portfolio/treaty"
 )
 
@@ -180,40 +181,34 @@ func TestSteepReinstatements(t *testing.T) {
 	}
 }
 
-// TestTotalLossesOnly: P = E min(N, K+1) / (1 + c·E min(N, K)) for total losses of a layer of 1, N Poisson (published values of this project,
-// section 6; formula of Sundt 1991), with no loading, on a sample that holds every count as often as its probability says.
+// TestTotalLossesOnly: total losses of a layer of 1, Poisson in number, no loading (testdata/published, table reinstatement premium; formula of Sundt
+// 1991), on a sample that holds every count as often as its probability says.
 func TestTotalLossesOnly(t *testing.T) {
 	const n = 1_000_000
-	for _, c := range []struct {
-		rate, charge float64
-		want         []float64 // for 0 or 1.. reinstatements
-	}{
-		{.1, 1, []float64{.09516258, .09116584, .09091863, .09090934}}, {.5, 1, []float64{.39346934, .34710010, .33569453, .33363971}},
-		{1, 1, []float64{.63212056, .54920065, .51501941, .50370306}}, {1, .5, []float64{.63212056, .68109470, .67440685, .66897140}},
-	} {
-		tariff, err := NewTariff(Curve{Name: "c", Distortion: ProportionalHazard{1}}, n)
-		if err != nil {
-			t.Fatal(err)
+	tariff, err := NewTariff(Curve{Name: "c", Distortion: ProportionalHazard{1}}, n)
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, v := range portfoliotest.PublishedValues(t, "..", "reinstatement premium") {
+		rate := portfoliotest.Numbers(v.Case)[0]
+		terms := portfoliotest.Numbers(v.Quantity) // count, charge in per cent
+		layer := treaty.Treaty{Kind: treaty.EventExcess, Limit: 1, Share: 1, Reinstatements: make([]float64, int(terms[0]))}
+		for i := range layer.Reinstatements {
+			layer.Reinstatements[i] = terms[1] / 100
 		}
-		for k, want := range c.want {
-			layer := treaty.Treaty{Kind: treaty.EventExcess, Limit: 1, Share: 1, Reinstatements: make([]float64, k)}
-			for i := range layer.Reinstatements {
-				layer.Reinstatements[i] = c.charge
+		var recoveries []float64
+		p := math.Exp(-rate)
+		for count := 1; count < 12; count++ {
+			p *= rate / float64(count)
+			for range int(math.Round(p * n)) {
+				recoveries = append(recoveries, layer.AnnualRecovery(float64(count)))
 			}
-			var recoveries []float64
-			p := math.Exp(-c.rate)
-			for count := 1; count < 12; count++ {
-				p *= c.rate / float64(count)
-				for range int(math.Round(p * n)) {
-					recoveries = append(recoveries, layer.AnnualRecovery(float64(count)))
-				}
-			}
-			slices.Sort(recoveries)
-			slices.Reverse(recoveries)
-			got, err := tariff.BasePremium(layer, recoveries)
-			if err != nil || math.Abs(got.Base-want) > 5e-6 { // counts are rounded to a millionth each
-				t.Errorf("rate %v, %d at %v: %.8f, want %.8f (%v)", c.rate, k, c.charge, got.Base, want, err)
-			}
+		}
+		slices.Sort(recoveries)
+		slices.Reverse(recoveries)
+		got, err := tariff.BasePremium(layer, recoveries)
+		if err != nil || math.Abs(got.Base-v.Value) > 5e-6 { // counts are rounded to a millionth each
+			t.Errorf("%s, %s: %.8f, want %.8f (%v)", v.Case, v.Quantity, got.Base, v.Value, err)
 		}
 	}
 }

@@ -3,11 +3,13 @@ package optimize
 import (
 	"context"
 	"math"
+	"strings"
 	"testing"
 
 	"cedewright/market"
 	"cedewright/portfolio/capital"
 	"cedewright/portfolio/loss"
+	"cedewright/portfolio/portfoliotest"
 	"cedewright/portfolio/sample"
 	"cedewright/portfolio/treaty"
 )
@@ -43,26 +45,41 @@ func exponentialCase(t testing.TB, n int, d market.Distortion, m capital.Measure
 	return a
 }
 
+// optimum is a row of published optima.
+type optimum struct {
+	name                       string
+	d                          market.Distortion
+	measure                    capital.Measure
+	level                      string
+	attachment, top, objective float64
+}
+
 // TestSearchFindsMarginalOptima: the optimum of ceded margin plus 10 % of the capital held beyond the mean, over all contracts on an annual
 // loss that is exponential with mean 1000, is one layer in closed form (marginal rule: cede at x where g(s) − s < r·(h(s) − s); the
-// values below were computed from it and confirmed by a second integration). The search must find attachment, top and objective.
+// values, testdata/published, table marginal optimum, were confirmed by a second integration). The search must find attachment, top and objective.
 func TestSearchFindsMarginalOptima(t *testing.T) {
 	const n = 20000
-	for _, want := range []struct {
-		name                       string
-		d                          market.Distortion
-		measure                    capital.Measure
-		level                      string
-		attachment, top, objective float64
-	}{
+	values := portfoliotest.PublishedValues(t, "..", "marginal optimum")
+	for _, v := range values {
+		if v.Quantity != "attachment" {
+			continue
+		}
+		price, against, _ := strings.Cut(v.Case, " against ")
 		// A rate load of 50 % is g(s) = 1.5·s, which within the probabilities that matter here is the tail value at risk at 1/3.
-		{"1.5·EL, VaR", market.TailValueAtRisk{P: 1.0 / 3}, capital.ValueAtRisk, "99.5%", 1791.7595, 5298.3174, 176.1759},
-		{"1.5·EL, TVaR", market.TailValueAtRisk{P: 1.0 / 3}, capital.TailValueAtRisk, "99%", 1791.7595, math.Inf(1), 179.1759},
-		{"Wang .3, VaR", market.Wang{Lambda: 0.3}, capital.ValueAtRisk, "99.5%", 1827.7176, 5298.3174, 210.8996},
-		{"Wang .3, TVaR", market.Wang{Lambda: 0.3}, capital.TailValueAtRisk, "99%", 1827.7176, math.Inf(1), 218.9118},
-		{"PH 1.25, VaR", market.ProportionalHazard{Rho: 1.25}, capital.ValueAtRisk, "99.5%", 1509.3856, 5298.3174, 212.1401},
-		{"PH 1.25, TVaR", market.ProportionalHazard{Rho: 1.25}, capital.TailValueAtRisk, "99%", 1509.3856, 11943.814, 225.6561},
-	} {
+		family, parameter, _ := strings.Cut(price, " ")
+		d, err := market.NewFamily(family, portfoliotest.Numbers(parameter)[0])
+		if err != nil {
+			t.Fatal(err)
+		}
+		name, level, _ := strings.Cut(against, " ")
+		measure, err := capital.ParseMeasure(name)
+		if err != nil {
+			t.Fatal(err)
+		}
+		want := optimum{v.Case, d, measure, level, v.Value, portfoliotest.Find(t, values, v.Case, "top").Value, portfoliotest.Find(t, values, v.Case, "objective").Value}
+		if want.top == 0 {
+			want.top = math.Inf(1) // unlimited
+		}
 		t.Run(want.name, func(t *testing.T) {
 			a := exponentialCase(t, n, want.d, want.measure, want.level, 0.1)
 			const step = 20.0
@@ -99,5 +116,72 @@ func TestSearchFindsMarginalOptima(t *testing.T) {
 				t.Errorf("objective %v, want %v", result.Best.TotalCost.Value, want.objective)
 			}
 		})
+	}
+}
+
+// TestStopLossOptima: Cai and Tan (2007): of all stop losses at (1+ρ) times their expected loss, the one at d* = S⁻¹(1/(1+ρ)) leaves the least required
+// capital, d* + (1+ρ)·E(X−d*)⁺ (testdata/published, table stop loss optimum); here on 200,000 quantiles of the law, at the 95 % level.
+func TestStopLossOptima(t *testing.T) {
+	const n = 200_000
+	laws := map[string]func(u float64) float64{
+		"exponential 1000": func(u float64) float64 { return -1000 * math.Log1p(-u) },
+		"lomax 3 2000":     func(u float64) float64 { return 2000 * (math.Pow(1-u, -1.0/3) - 1) },
+	}
+	values := portfoliotest.PublishedValues(t, "..", "stop loss optimum")
+	for _, v := range values {
+		rho, quantity, _ := strings.Cut(v.Quantity, " ")
+		if quantity != "retention" {
+			continue
+		}
+		loading := portfoliotest.Numbers(rho)[0]
+		b := loss.NewBuilder(n, []string{"all"})
+		var losses []float64
+		for y := range n {
+			losses = append(losses, laws[v.Case]((float64(y)+0.5)/n))
+			if err := b.Add(loss.Row{Year: y + 1, Class: "all", Loss: losses[y]}); err != nil {
+				t.Fatal(err)
+			}
+		}
+		table, err := b.Build()
+		if err != nil {
+			t.Fatal(err)
+		}
+		a, err := NewAppraiser(Case{
+			Book: loss.Book{Classes: []loss.Class{{Name: "all"}}, Table: table},
+			Standards: []capital.Standard{
+				{Name: "var", Measure: capital.ValueAtRisk, Level: mustLevel("95%"), Basis: capital.Result},
+				{Name: "tvar", Measure: capital.TailValueAtRisk, Level: mustLevel("95%"), Basis: capital.Result},
+			},
+		})
+		if err != nil {
+			t.Fatal(err)
+		}
+		at := func(d float64) Appraisal {
+			expected := 0.0
+			for _, x := range losses {
+				expected += max(x-d, 0) / n
+			}
+			p, err := a.Appraise(treaty.Programme{Treaties: []treaty.Treaty{{Name: "stop", Kind: treaty.AggregateExcess, Retention: d, Limit: math.Inf(1), Share: 1, Premium: treaty.Some((1 + loading) * expected)}}}, false)
+			if err != nil {
+				t.Fatal(err)
+			}
+			return p
+		}
+		minimum, premium := portfoliotest.Find(t, values, v.Case, rho+" minimum").Value, portfoliotest.Find(t, values, v.Case, rho+" premium").Value
+		best := at(v.Value)
+		// 1e-3: the midpoints miss the law's tail beyond its last quantile, most with the heavier law.
+		if math.Abs(best.CededPremium.Value/premium-1) > 1e-3 {
+			t.Errorf("%s, ρ %s: premium %v, want %v", v.Case, rho, best.CededPremium.Value, premium)
+		}
+		for k, c := range best.Capital {
+			if math.Abs(c.Net.Value/minimum-1) > 1e-3 {
+				t.Errorf("%s, ρ %s, %s: %v, want %v", v.Case, rho, c.Standard, c.Net.Value, minimum)
+			}
+			for _, move := range []float64{0.85, 1.15} {
+				if other := at(v.Value * move).Capital[k].Net.Value; other <= c.Net.Value {
+					t.Errorf("%s, ρ %s, %s: retention × %v leaves %v, the optimum %v", v.Case, rho, c.Standard, move, other, c.Net.Value)
+				}
+			}
+		}
 	}
 }

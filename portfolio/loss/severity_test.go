@@ -3,37 +3,46 @@ package loss
 import (
 	"math"
 	"math/rand/v2"
+	"strings"
 	"testing"
+
+	"cedewright/portfolio/portfoliotest"
 
 	"gonum.org/v1/gonum/integrate/quad"
 )
 
-// TestLimitedExpectedValues: E[min(X, d)] at d = 500, 1000, 2000, 5000 (published values of this project, section 5, computed from the closed
-// forms and confirmed by quadrature).
+// lawOf gives the law that a published case names.
+func lawOf(t testing.TB, name string) Severity {
+	t.Helper()
+	x := portfoliotest.Numbers(name)
+	switch strings.Fields(name)[0] {
+	case "exponential":
+		return must(NewExponential(x[0]))(t)
+	case "lognormal":
+		return must(NewLogNormalOf(x[0], x[1]))(t)
+	case "gamma":
+		return must(NewGamma(x[0], x[1]))(t)
+	case "lomax":
+		return must(NewGeneralisedPareto(0, 1/x[0], x[1]/x[0], math.Inf(1)))(t)
+	case "pareto":
+		return must(NewPareto(x[0], x[1], math.Inf(1)))(t)
+	}
+	t.Fatalf("no law %q", name)
+	return nil
+}
+
+// TestLimitedExpectedValues: testdata/published, tables limited expected value and pareto layer.
 func TestLimitedExpectedValues(t *testing.T) {
-	lomax := must(NewGeneralisedPareto(0, 1.0/3, 2000.0/3, math.Inf(1)))(t)
-	for _, c := range []struct {
-		law  Severity
-		want [4]float64
-	}{
-		{must(NewExponential(1000))(t), [4]float64{393.469340, 632.120559, 864.664717, 993.262053}},
-		{must(NewLogNormalOf(1000, 0.5))(t), [4]float64{489.667704, 813.284957, 979.335409, 999.913125}},
-		{must(NewLogNormalOf(1000, 2))(t), [4]float64{351.342799, 525.873233, 702.685597, 879.679635}},
-		{must(NewGamma(2, 500))(t), [4]float64{448.180838, 729.329434, 945.053083, 999.727600}},
-		{must(NewGamma(0.5, 2000))(t), [4]float64{320.858649, 516.058551, 742.191710, 954.939449}},
-		{lomax, [4]float64{360, 555.555556, 750, 918.367347}},
-	} {
-		for i, d := range []float64{500, 1000, 2000, 5000} {
-			if got := c.law.LimitedExpectedValue(d); math.Abs(got-c.want[i]) > 1e-6 { // printed with six decimals
-				t.Errorf("%v: E[min(X, %v)] is %.6f, want %.6f", c.law, d, got, c.want[i])
-			}
+	for _, p := range portfoliotest.PublishedValues(t, "../..", "limited expected value") {
+		d := portfoliotest.Numbers(p.Quantity)[0]
+		if got := lawOf(t, p.Case).LimitedExpectedValue(d); math.Abs(got-p.Value) > 1e-6 { // printed with six decimals
+			t.Errorf("%s: E[min(X, %v)] is %.6f, want %.6f", p.Case, d, got, p.Value)
 		}
 	}
-	// Pareto above 1: layer means of section 3.
-	pareto := must(NewPareto(1, 1.5, math.Inf(1)))(t)
-	for _, c := range [][3]float64{{1, 1, .5857864376}, {4, 1, 1.1055728090}, {3, 2, .5197863714}, {5, 5, .2619716590}, {10, 10, .1852419365}} {
-		if got := pareto.LimitedExpectedValue(c[0]+c[1]) - pareto.LimitedExpectedValue(c[1]); math.Abs(got-c[2]) > 1e-10 {
-			t.Errorf("Pareto layer %v xs %v: %v, want %v", c[0], c[1], got, c[2])
+	for _, p := range portfoliotest.PublishedValues(t, "../..", "pareto layer") {
+		law, x := lawOf(t, p.Case), portfoliotest.Numbers(p.Quantity)
+		if got := law.LimitedExpectedValue(x[0]+x[1]) - law.LimitedExpectedValue(x[1]); math.Abs(got-p.Value) > 1e-10 {
+			t.Errorf("%s, layer %s: %v, want %v", p.Case, p.Quantity, got, p.Value)
 		}
 	}
 }

@@ -7,7 +7,10 @@ import (
 	"math/rand/v2"
 	"os"
 	"slices"
+	"strings"
 	"testing"
+
+	"cedewright/portfolio/portfoliotest"
 
 	"gonum.org/v1/gonum/stat/distuv"
 	"pgregory.net/rapid"
@@ -171,7 +174,34 @@ func TestOracleAllocation(t *testing.T) {
 	}
 }
 
-// TestPublishedAllocationWithTie: ten equally likely pairs with a tie at total 3 (published values of this project, section 7: computed).
+// distortionOf gives the distortion that a published case names.
+func distortionOf(t testing.TB, name string) func(float64) float64 {
+	t.Helper()
+	x := append(portfoliotest.Numbers(name), 0)[0]
+	switch strings.Fields(name)[0] {
+	case "mean":
+		return func(s float64) float64 { return s }
+	case "proportional-hazard":
+		return proportionalHazard(x)
+	case "dual-power":
+		return func(s float64) float64 { return 1 - math.Pow(1-s, x) }
+	case "tail-value-at-risk":
+		return tail(x)
+	case "wang":
+		return wang(x)
+	case "constant-cost-of-capital":
+		return func(s float64) float64 {
+			if s <= 0 {
+				return 0
+			}
+			return (s + x) / (1 + x)
+		}
+	}
+	t.Fatalf("no distortion %q", name)
+	return nil
+}
+
+// TestPublishedAllocationWithTie: ten equally likely pairs with a tie at total 3 (testdata/published, table allocation).
 func TestPublishedAllocationWithTie(t *testing.T) {
 	x := []float64{0, 1, 2, 4, 3, 0, 7, 2, 10, 5}
 	y := []float64{0, 2, 1, 0, 3, 8, 3, 12, 10, 25}
@@ -179,37 +209,21 @@ func TestPublishedAllocationWithTie(t *testing.T) {
 	for i := range sum {
 		sum[i] = x[i] + y[i]
 	}
-	for _, c := range []struct {
-		name   string
-		g      func(float64) float64
-		wx, wy float64
-	}{
-		{"mean", func(s float64) float64 { return s }, 3.4, 6.4},
-		{"dual power 2", func(s float64) float64 { return 1 - (1-s)*(1-s) }, 4.53, 9.91},
-		{"√s", math.Sqrt, 4.3039038712, 11.6435734776},
-		{"TVaR .8", tail(0.8), 7.5, 17.5},
-		{"TVaR .85", tail(0.85), 20.0 / 3, 20},
-		{"Wang .5", wang(0.5), 4.28795538, 9.90485961},
-		{"cost of capital 10 %", func(s float64) float64 {
-			if s <= 0 {
-				return 0
-			}
-			return (s + 0.1) / 1.1
-		}, 39.0 / 11, 89.0 / 11},
-	} {
-		xi := AllocationWeights(sum, c.g)
-		gotX, gotY := 0.0, 0.0
-		for i := range xi {
-			gotX += xi[i] * x[i] / 10
-			gotY += xi[i] * y[i] / 10
+	for _, p := range portfoliotest.PublishedValues(t, "../..", "allocation") {
+		part := x
+		if strings.HasSuffix(p.Quantity, "second") {
+			part = y
 		}
-		closeTo(t, c.name+", first part", gotX, c.wx, 1e-8) // printed with ten digits at most
-		closeTo(t, c.name+", second part", gotY, c.wy, 1e-8)
-		closeTo(t, c.name+", total", sampleOf(t, sum...).Distorted(c.g), gotX+gotY, 1e-12)
+		xi := AllocationWeights(sum, distortionOf(t, p.Quantity))
+		got := 0.0
+		for i := range xi {
+			got += xi[i] * part[i] / 10
+		}
+		closeTo(t, p.Quantity, got, p.Value, 1e-8) // printed with ten digits at most
 	}
 }
 
-// TestClosedForms: exponential law with mean 1000 on a fine grid of quantiles (published values of this project, sections 2 and 3).
+// TestClosedForms: an exponential law on a fine grid of quantiles (testdata/published, tables risk measure and distorted mean).
 func TestClosedForms(t *testing.T) {
 	const n = 400_000
 	values := make([]float64, n)
@@ -217,53 +231,57 @@ func TestClosedForms(t *testing.T) {
 		values[i] = -1000 * math.Log1p(-(float64(i)+0.5)/n)
 	}
 	s := sampleOf(t, values...)
-	// The grid of midpoints misses the tail beyond its last quantile; relative to the figures that is 1e-4 at worst.
-	for _, c := range []struct {
-		name      string
-		got, want float64
-	}{
-		{"VaR 99 %", s.VaR(level(t, "99%")), 4605.170186},
-		{"TVaR 99 %", s.TVaR(level(t, "99%")), 5605.170186},
-		{"VaR 99.5 %", s.VaR(level(t, "99.5%")), 5298.317367},
-		{"TVaR 99.5 %", s.TVaR(level(t, "99.5%")), 6298.317367},
-		{"proportional hazard 1.2", s.Distorted(proportionalHazard(1.2)), 1200},
-		{"dual power 2", s.Distorted(func(u float64) float64 { return 1 - (1-u)*(1-u) }), 1500},
-		{"dual power 3", s.Distorted(func(u float64) float64 { return 1 - (1-u)*(1-u)*(1-u) }), 1833.3333},
-		{"Wang .5", s.Distorted(wang(0.5)), 1530.067375},
-	} {
-		closeTo(t, c.name, c.got, c.want, 5e-4*c.want)
+	// The grid of midpoints misses the tail beyond its last quantile; relative to the figures that is 5e-4 at worst.
+	for _, p := range portfoliotest.PublishedValues(t, "../..", "risk measure") {
+		if p.Case == "exponential 1000" {
+			closeTo(t, p.Quantity, measured(t, s, p.Quantity), p.Value, 5e-4*p.Value)
+		}
+	}
+	for _, p := range portfoliotest.PublishedValues(t, "../..", "distorted mean") {
+		closeTo(t, p.Quantity, s.Distorted(distortionOf(t, p.Quantity)), p.Value, 5e-4*p.Value)
+	}
+	for i := range values {
+		values[i] = distuv.UnitNormal.Quantile((float64(i) + 0.5) / n)
+	}
+	s = sampleOf(t, values...)
+	for _, p := range portfoliotest.PublishedValues(t, "../..", "risk measure") {
+		if p.Case == "normal 0 1" {
+			closeTo(t, p.Quantity, measured(t, s, p.Quantity), p.Value, 1e-4*p.Value)
+		}
 	}
 }
 
-// TestStandardErrors compares with the asymptotic errors of n = 10,000 (published values of this project, section 9) on the exact quantiles
-// of the laws, where no chance is left but in the density estimate of value at risk.
+// measured gives the measure that a quantity such as "TVaR 99%" names.
+func measured(t testing.TB, s Sample, quantity string) float64 {
+	t.Helper()
+	name, text, _ := strings.Cut(quantity, " ")
+	if name == "TVaR" {
+		return s.TVaR(level(t, text))
+	}
+	return s.VaR(level(t, text))
+}
+
+// TestStandardErrors compares with the asymptotic errors of n = 10,000 (testdata/published, table standard error) on the exact quantiles of the laws,
+// where no chance is left but in the density estimate of value at risk.
 func TestStandardErrors(t *testing.T) {
 	const n = 10_000
-	quantiles := func(q func(u float64) float64) Sample {
+	laws := map[string]func(u float64) float64{
+		"lomax 3 2000":     func(u float64) float64 { return 2000 * (math.Pow(1-u, -1.0/3) - 1) },
+		"exponential 1000": func(u float64) float64 { return -1000 * math.Log1p(-u) },
+		"normal 0 1":       distuv.UnitNormal.Quantile,
+	}
+	for _, p := range portfoliotest.PublishedValues(t, "../..", "standard error") {
 		values := make([]float64, n)
 		for i := range values {
-			values[i] = q((float64(i) + 0.5) / n)
+			values[i] = laws[p.Case]((float64(i) + 0.5) / n)
 		}
-		return sampleOf(t, values...)
-	}
-	lomax := quantiles(func(u float64) float64 { return 2000 * (math.Pow(1-u, -1.0/3) - 1) })
-	exponential := quantiles(func(u float64) float64 { return -1000 * math.Log1p(-u) })
-	normal := quantiles(distuv.UnitNormal.Quantile)
-	for _, c := range []struct {
-		name      string
-		got, want float64
-		tolerance float64 // relative: the sample's tail ends at its last quantile, which tells the more the heavier the tail
-	}{
-		{"normal VaR 99 %", normal.VaRError(level(t, "99%")), .0373324, 0.02},
-		{"normal TVaR 99 %", normal.TVaRError(level(t, "99%")), .0458836, 0.03},
-		{"exponential VaR 99 %", exponential.VaRError(level(t, "99%")), 99.49874, 0.02},
-		{"exponential TVaR 99 %", exponential.TVaRError(level(t, "99%")), 141.06736, 0.03},
-		{"exponential VaR 99.5 %", exponential.VaRError(level(t, "99.5%")), 141.06736, 0.03},
-		{"exponential TVaR 99.5 %", exponential.TVaRError(level(t, "99.5%")), 199.74984, 0.05},
-		{"Lomax VaR 99 %", lomax.VaRError(level(t, "99%")), 307.8882, 0.03},
-		{"Lomax TVaR 99 %", lomax.TVaRError(level(t, "99%")), 927.1566, 0.25},
-	} {
-		closeTo(t, c.name, c.got, c.want, c.tolerance*c.want)
+		s := sampleOf(t, values...)
+		name, text, _ := strings.Cut(p.Quantity, " ")
+		got, tolerance := s.VaRError(level(t, text)), 0.03
+		if name == "TVaR" { // the sample's tail ends at its last quantile, which tells the more the heavier the tail
+			got, tolerance = s.TVaRError(level(t, text)), map[string]float64{"normal 0 1": 0.04, "exponential 1000": 0.06, "lomax 3 2000": 0.35}[p.Case]
+		}
+		closeTo(t, p.Case+" "+p.Quantity, got, p.Value, tolerance*p.Value)
 	}
 }
 

@@ -8,6 +8,7 @@ import (
 	"testing"
 
 	"cedewright/portfolio/loss"
+	"cedewright/portfolio/portfoliotest"
 	"cedewright/portfolio/treaty"
 
 	"pgregory.net/rapid"
@@ -38,8 +39,8 @@ func apply(t fataler, table *loss.Table, treaties ...treaty.Treaty) *treaty.Outc
 	return o
 }
 
-// TestYearsByHand: layer 100 xs 50, premium 20, events 90, 200, 120, 400 (testdata/published/reinstatement-years.csv). The sums of the year do
-// not depend on the order of events.
+// TestYearsByHand: layer 100 xs 50, premium 20, events 90, 200, 120, 400 (testdata/published, table year by
+// hand). The sums of the year do not depend on the order of events.
 func TestYearsByHand(t *testing.T) {
 	var rows []loss.Row
 	for i, x := range []float64{90, 200, 120, 400} {
@@ -47,21 +48,28 @@ func TestYearsByHand(t *testing.T) {
 	}
 	table := tableOf(t, 1, []string{"a"}, rows...)
 	layer := treaty.Treaty{Name: "l", Kind: treaty.EventExcess, Retention: 50, Limit: 100, Share: 1}
-	for _, c := range []struct {
-		reinstatements     []float64
-		deductible         float64
-		recovery, reinPaid float64
-	}{
-		{[]float64{1}, 0, 200, 20}, {[]float64{1, 1}, 0, 300, 40}, {[]float64{0.5}, 0, 200, 10}, {[]float64{1}, 60, 200, 20},
-		{[]float64{}, 0, 100, 0}, {nil, 0, 310, 0},
-	} {
-		layer.Reinstatements, layer.AnnualDeductible = c.reinstatements, c.deductible
-		o := apply(t, table, layer).Treaties[0]
-		if o.Recovery[0] != c.recovery || 20*o.Reinstated[0] != c.reinPaid {
-			t.Errorf("%v, deductible %v: recovery %v, reinstatement premium %v, want %v and %v", c.reinstatements, c.deductible, o.Recovery[0], 20*o.Reinstated[0], c.recovery, c.reinPaid)
+	values := portfoliotest.PublishedValues(t, "../..", "year by hand")
+	for _, v := range values {
+		x := append(portfoliotest.Numbers(v.Case), 0) // count, charge in per cent, deductible
+		layer.AnnualDeductible = x[2]
+		layer.Reinstatements = make([]float64, int(x[0]))
+		for k := range layer.Reinstatements {
+			layer.Reinstatements[k] = x[1] / 100
 		}
-		if o.AttachmentProbability != 1 || o.ExhaustionProbability != 1 {
-			t.Errorf("probabilities %v, %v", o.AttachmentProbability, o.ExhaustionProbability)
+		o := apply(t, table, layer).Treaties[0]
+		got := o.Recovery[0]
+		if v.Quantity == "reinstatement premium" {
+			got = 20 * o.Reinstated[0]
+		}
+		if got != v.Value {
+			t.Errorf("%s, %s: %v, want %v", v.Case, v.Quantity, got, v.Value)
+		}
+	}
+	layer.AnnualDeductible = 0
+	for want, reinstatements := range map[float64][]float64{100: {}, 310: nil} { // by hand
+		layer.Reinstatements = reinstatements
+		if o := apply(t, table, layer).Treaties[0]; o.Recovery[0] != want || o.Reinstated[0] != 0 || o.AttachmentProbability != 1 || o.ExhaustionProbability != 1 {
+			t.Errorf("%v: %+v, want %v", reinstatements, o, want)
 		}
 	}
 }
