@@ -195,3 +195,20 @@ func (a *Appraiser) NetLosses(p treaty.Programme) ([]float64, error) {
 	}
 	return net, nil
 }
+
+// SubjectReturnPeriods gives, for each treaty of a programme, the loss of its unit (event, risk, year) that is exceeded once in each of the return
+// periods, in years. A treaty that is not placed has none.
+func (a *Appraiser) SubjectReturnPeriods(p treaty.Programme, periods []float64) ([][]float64, error) {
+	w := a.scratch.Get().(*workspace)
+	defer a.scratch.Put(w)
+	if _, err := p.Order(); err != nil {
+		return nil, err
+	}
+	all := make([][]float64, len(p.Treaties))
+	for i, t := range p.Treaties {
+		if t.Placed() > 0 {
+			all[i] = a.subjectOf(p, i, w).exceededOnceIn(periods)
+		}
+	}
+	return all, nil
+}

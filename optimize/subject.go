@@ -231,3 +231,23 @@ func (s *subject) reaching(x float64) int {
 	}
 	return lo
 }
+
+// exceededOnceIn gives the loss of a unit that is exceeded in one year of so many, for each return period, in years: the largest loss x such
+// that at least 1/period of the years have a unit above x, read off the years by their largest unit; 0 where fewer years have a loss.
+func (s *subject) exceededOnceIn(periods []float64) []float64 {
+	seen := make([]uint64, (s.years+63)/64)
+	var largest []float64 // of each year with a loss, falling
+	for i, y := range s.year {
+		if bit := uint64(1) << (y & 63); seen[y>>6]&bit == 0 {
+			seen[y>>6] |= bit
+			largest = append(largest, s.loss[i])
+		}
+	}
+	at := make([]float64, len(periods))
+	for k, period := range periods {
+		if rank := int(float64(s.years) / period); rank < len(largest) {
+			at[k] = largest[rank]
+		}
+	}
+	return at
+}

@@ -121,6 +121,7 @@ type Searched struct {
 	NoCover   optimize.Appraisal
 	Curves    []CurveFit
 	Curve     ExceedanceCurves // gross, with the start programme, with the best
+	Scales    [][][]float64    // of the start programme and the best: by treaty, the loss of its unit exceeded once in each of ReturnPeriods
 	Keep      []optimize.Keep  // constraints
 	Space     string           // the decision space in words, with its size
 }

@@ -189,6 +189,13 @@ func (s *Study) Search(ctx context.Context, o SearchOptions) (Searched, error) {
 	found.Notes = append(found.Notes, result.Notes...)
 	found.Keep = space.Keep
 	found.Space = describeSpace(space, result.SpaceSize)
+	for _, p := range []optimize.Appraisal{found.Start, found.Result.Best} {
+		scale, err := s.appraiser.SubjectReturnPeriods(p.Programme, ReturnPeriods)
+		if err != nil {
+			return Searched{}, err
+		}
+		found.Scales = append(found.Scales, scale)
+	}
 	found.Curve, err = s.exceedance(found)
 	return found, err
 }
