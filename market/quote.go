@@ -14,6 +14,7 @@ type Quote struct {
 	Curve      string  // the curve that it speaks for
 	Name       string  // what a person calls it: the treaty's name, or "row 7"
 	RateOnLine float64 // base premium over limit, brokerage included, above 0, at most 1
+	Bid, Offer float64 // rates on line between which the market would deal; 0 = RateOnLine itself
 	Weight     float64 // ≥ 0; 0 leaves it out of the fit
 	Line       int     // line of the file that it came from; 0 = none
 
@@ -41,6 +42,12 @@ func (q Quote) problems() []fault.Fault {
 	}
 	if !(q.Weight >= 0) || math.IsInf(q.Weight, 0) {
 		add("weight", fmt.Sprint(q.Weight), "a number of at least 0")
+	}
+	if q.Bid != 0 && !(q.Bid > 0 && q.Bid <= q.RateOnLine) {
+		add("bid", fmt.Sprint(q.Bid), fmt.Sprintf("above 0 and at most the rate on line %v", q.RateOnLine))
+	}
+	if q.Offer != 0 && !(q.Offer >= q.RateOnLine && q.Offer <= 1) {
+		add("offer", fmt.Sprint(q.Offer), fmt.Sprintf("at least the rate on line %v and at most 1", q.RateOnLine))
 	}
 	if q.Own() {
 		if q.Years < 1 || len(q.Recoveries) > q.Years {

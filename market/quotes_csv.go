@@ -9,10 +9,10 @@ import (
 )
 
 // ReadQuotes reads market-wide quotes from a CSV file with the columns curve, attachment_probability, exhaustion_probability,
-// expected_loss, rate_on_line and, if wanted, weight (1 when missing or empty), in any order. Rates are fractions of the limit, brokerage
-// included. It fails with every fault, up to twenty, each with its place.
+// expected_loss, rate_on_line and, if wanted, weight (1 when missing or empty), bid and offer, in any order. Rates are fractions of the limit,
+// brokerage included. It fails with every fault, up to twenty, each with its place.
 func ReadQuotes(r io.Reader, file string) ([]Quote, error) {
-	t, err := csvfile.Open(r, file, []string{"curve", "attachment_probability", "exhaustion_probability", "expected_loss", "rate_on_line", "weight"}, "weight")
+	t, err := csvfile.Open(r, file, []string{"curve", "attachment_probability", "exhaustion_probability", "expected_loss", "rate_on_line", "weight", "bid", "offer"}, "weight", "bid", "offer")
 	if err != nil {
 		return nil, err
 	}
@@ -25,9 +25,9 @@ func ReadQuotes(r io.Reader, file string) ([]Quote, error) {
 			to   *float64
 		}{
 			{"attachment_probability", &q.Attachment}, {"exhaustion_probability", &q.Exhaustion}, {"expected_loss", &q.ExpectedLoss},
-			{"rate_on_line", &q.RateOnLine}, {"weight", &q.Weight},
+			{"rate_on_line", &q.RateOnLine}, {"weight", &q.Weight}, {"bid", &q.Bid}, {"offer", &q.Offer},
 		} {
-			if column.name == "weight" && t.Text("weight") == "" {
+			if optional := column.to == &q.Weight || column.to == &q.Bid || column.to == &q.Offer; optional && t.Text(column.name) == "" {
 				continue
 			}
 			value, fine := t.Number(column.name)
