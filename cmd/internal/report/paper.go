@@ -24,7 +24,7 @@ const (
 
 // pictureStyle colours the marks of every picture.
 const pictureStyle = `.grid{stroke:var(--line);stroke-width:1}.tick{fill:var(--soft);font-size:12px}.axis{fill:var(--soft);font-size:13px}
-.label{fill:var(--ink);font-size:13px;paint-order:stroke;stroke:var(--page);stroke-width:4px;stroke-linejoin:round}.leader{stroke:var(--quiet);stroke-width:1}
+.label{fill:var(--ink);font-size:13px;paint-order:stroke;stroke:var(--page);stroke-width:4px;stroke-linejoin:round}.leader{stroke:var(--quiet);stroke-width:1}.period{fill:var(--soft);font-size:11px}.period-mark{stroke:var(--quiet);stroke-width:1.5}
 polyline{fill:none;stroke-width:2}.front{stroke:var(--main)}.front-point{fill:var(--main)}.own{stroke:var(--warm);stroke-dasharray:6 5}
 .diagonal{stroke:var(--quiet);stroke-dasharray:2 4}.gross{stroke:var(--quiet);stroke-dasharray:7 4}.start-line{stroke:var(--warm);stroke-dasharray:2 3}.best-line{stroke:var(--main)}
 .best{fill:var(--main)}.none{fill:none;stroke:var(--ink);stroke-width:2}.start{fill:var(--warm)}.other{fill:var(--quiet)}
@@ -67,7 +67,7 @@ func Paper(w io.Writer, s study.Searched) error {
 		Recommendation: Recommendation(s),
 		// All of these are built by this package from escaped parts.
 		Style:      template.CSS(":root{" + lightColours + "}@media (prefers-color-scheme:dark){:root{" + darkColours + "}}@media print{:root{" + lightColours + "}}" + pictureStyle),
-		Towers:     template.HTML(towersPicture(s.Currency, towers...)),
+		Towers:     template.HTML(towersPicture(s.Currency, s.Scales, towers...)),
 		Frontier:   template.HTML(frontierPicture(s)),
 		Exceedance: template.HTML(exceedancePicture(s)),
 		Figures:    sideBySide(s.Appraised, columns),

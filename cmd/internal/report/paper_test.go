@@ -42,6 +42,7 @@ func found(frontier int, names ...string) study.Searched {
 		Curve:  study.ExceedanceCurves{ReturnPeriods: []float64{2, 10, 100}, Gross: []float64{10e6, 50e6, 200e6}, Programmes: []string{names[0], "best found"}, Net: [][]float64{{9e6, 30e6, 90e6}, {9e6, 40e6, 80e6}}},
 		Curves: []study.CurveFit{{Curve: market.Curve{Name: names[0], Distortion: market.Wang{Lambda: 0.4}}}},
 	}
+	s.Scales = [][][]float64{{{1, 2, 3, 10e6, 20e6, 40e6, 80e6, 200e6, 400e6}}, {{1, 2, 3, 10e6, 20e6, 40e6, 80e6, 200e6, 400e6}, nil}}
 	s.Differences = []study.Difference{{Programme: "best found", Against: names[0], TotalCost: optimize.Estimate{Value: -6e6, StandardError: 3e5}}}
 	s.Result = optimize.Result{Best: best, Feasible: true, Status: optimize.Settled}
 	for i := range frontier {
@@ -66,7 +67,7 @@ func TestPaperIsWellFormed(t *testing.T) {
 		if strings.Contains(b.String(), "NaN") {
 			t.Error("the page holds NaN")
 		}
-		for _, picture := range []string{frontierPicture(s), exceedancePicture(s), curvePicture(s.Curves[0]), towersPicture("EUR", s.Start, s.Result.Best), standalone(curvePicture(s.Curves[0]))} {
+		for _, picture := range []string{frontierPicture(s), exceedancePicture(s), curvePicture(s.Curves[0]), towersPicture("EUR", s.Scales, s.Start, s.Result.Best), standalone(curvePicture(s.Curves[0]))} {
 			d := xml.NewDecoder(strings.NewReader("<all>" + picture + "</all>"))
 			for {
 				if _, err := d.Token(); errors.Is(err, io.EOF) {

@@ -6,6 +6,7 @@ import (
 	"math"
 	"strings"
 
+	"cedewright/cmd/internal/study"
 	"cedewright/optimize"
 	"cedewright/portfolio/treaty"
 )
@@ -14,13 +15,14 @@ import (
 type column struct {
 	name     string
 	treaties []optimize.TreatyFigure
+	scale    []float64 // loss exceeded once in each of study.ReturnPeriods; nil = not known
 }
 
 // columnsOf groups treaties by kind and subject, in the order in which they stand.
-func columnsOf(a optimize.Appraisal) []column {
+func columnsOf(a optimize.Appraisal, scales [][]float64) []column {
 	var list []column
 	index := map[string]int{}
-	for _, f := range a.Treaties {
+	for k, f := range a.Treaties {
 		t := f.Terms
 		if t.Placed() == 0 || t.Kind == treaty.QuotaShare || math.IsInf(t.Limit, 1) {
 			continue
@@ -40,6 +42,9 @@ func columnsOf(a optimize.Appraisal) []column {
 			i = len(list)
 			index[key] = i
 			list = append(list, column{name: name})
+			if k < len(scales) {
+				list[i].scale = scales[k]
+			}
 		}
 		list[i].treaties = append(list[i].treaties, f)
 	}
@@ -47,11 +52,12 @@ func columnsOf(a optimize.Appraisal) []column {
 }
 
 // towersPicture draws the layers of programmes on one money axis, drawn by square root so that low layers can be seen beside high ones:
-// height is money, width is the share placed, and beside each layer stand its terms and how often it is hit.
-func towersPicture(currency string, all ...optimize.Appraisal) string {
+// height is money, width is the share placed, beside each layer stand its terms and how often it is hit, and along each column the return periods
+// of its loss.
+func towersPicture(currency string, scales [][][]float64, all ...optimize.Appraisal) string {
 	top := 0.0
 	for _, a := range all {
-		for _, c := range columnsOf(a) {
+		for _, c := range columnsOf(a, nil) {
 			for _, f := range c.treaties {
 				top = max(top, f.Terms.Retention+f.Terms.Limit)
 			}
@@ -63,21 +69,25 @@ func towersPicture(currency string, all ...optimize.Appraisal) string {
 	var parts []string
 	columns := 1
 	for _, a := range all {
-		columns = max(columns, len(columnsOf(a)))
+		columns = max(columns, len(columnsOf(a, nil)))
 	}
-	for _, a := range all {
-		parts = append(parts, towerPicture(currency, a, upTo(top), columns))
+	for k, a := range all {
+		var scale [][]float64
+		if first := len(scales) - len(all); first+k >= 0 { // the best alone stands when there is no start programme
+			scale = scales[first+k]
+		}
+		parts = append(parts, towerPicture(currency, a, scale, upTo(top), columns))
 	}
 	return strings.Join(parts, "")
 }
 
 const (
-	blockWidth  = 74.0
-	columnWidth = 216.0
+	blockWidth  = 66.0
+	columnWidth = 232.0
 )
 
-func towerPicture(currency string, a optimize.Appraisal, top float64, room int) string {
-	columns := columnsOf(a)
+func towerPicture(currency string, a optimize.Appraisal, scales [][]float64, top float64, room int) string {
+	columns := columnsOf(a, scales)
 	width := marginLeft + marginRight + columnWidth*float64(room)
 	height := 460.0
 	y := moneyAxis(0, top, "loss of the event, risk or year", currency)
@@ -103,7 +113,8 @@ func towerPicture(currency string, a optimize.Appraisal, top float64, room int) 
 		}
 	}
 	for k, col := range columns {
-		left := marginLeft + columnWidth*float64(k) + 10
+		left := marginLeft + columnWidth*float64(k) + 46
+		c.periods(left-6, col.scale)
 		var labels []label
 		for _, f := range col.treaties {
 			low, high := c.y.at(f.Terms.Retention), c.y.at(f.Terms.Retention+f.Terms.Limit)
@@ -115,12 +126,26 @@ func towerPicture(currency string, a optimize.Appraisal, top float64, room int) 
 			labels = append(labels, label{left + blockWidth - 4, middle + 8, fmt.Sprintf("%s, hit %s", Percent(f.Terms.Share), ReturnPeriod(f.AttachmentProbability.Value))})
 		}
 		c.labels(labels)
-		c.text("tick", left, height-28, "start", col.name)
+		c.text("tick", left-40, height-28, "start", col.name)
 	}
 	if len(columns) == 0 {
 		c.text("label", (c.x.from+c.x.to)/2, height/2, "middle", "no excess cover")
 	}
 	c.text("axis", marginLeft+10, height-8, "start", strings.Join(quota, "; "))
 	return fmt.Sprintf(`<figure class="tower"><figcaption>%s</figcaption>%s</figure>`, html.EscapeString(a.Programme.Name),
-		c.svg("Layers of “"+a.Programme.Name+"”", "Height is money, filled width the share placed; beside each layer its terms and how often it is hit"))
+		c.svg("Layers of “"+a.Programme.Name+"”", "Height is money, filled width the share placed; left of each column the return periods of its loss, beside each layer its terms and how often it is hit"))
+}
+
+// periods marks, beside a column, the losses that are exceeded once in so many years.
+func (c *chart) periods(x float64, scale []float64) {
+	last := math.Inf(1)
+	for k, loss := range scale {
+		at := c.y.at(loss)
+		if loss <= 0 || loss > c.y.high || last-at < 13 {
+			continue
+		}
+		c.line("period-mark", x-4, at, x, at)
+		c.text("period", x-6, at+4, "end", significant(study.ReturnPeriods[k], 4)+" y")
+		last = at
+	}
 }
