@@ -83,7 +83,7 @@ func towersPicture(currency string, scales [][][]float64, all ...optimize.Apprai
 
 const (
 	blockWidth  = 66.0
-	columnWidth = 232.0
+	columnWidth = 252.0
 )
 
 func towerPicture(currency string, a optimize.Appraisal, scales [][]float64, top float64, room int) string {
