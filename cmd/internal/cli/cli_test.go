@@ -58,7 +58,7 @@ func TestWrongUsage(t *testing.T) {
 		{[]string{"look", write("binary.yaml", "\x00\x01")}, "binary"},
 		{[]string{"look", folder}, "is a folder"},
 		{[]string{"search", small, "--out", filepath.Join(folder, "no", "such")}, "is not there"},
-		{[]string{"search", small, "--out", notOurs}, "holds files that are not results of this program"},
+		{[]string{"search", small, "--out", notOurs}, "which is not a result of this program"},
 		{[]string{"search", small, "--out", small}, "is a file"},
 		{[]string{"look", spoiled("key.yaml", "currency:", "curency:")}, `key.yaml:2:1: curency: unknown key`},
 		{[]string{"appraise", spoiled("curve.yaml", "[100%], curve: all}", "[100%], curve: al}")}, `no curve is named "al"`},
@@ -81,7 +81,7 @@ func TestWrongUsage(t *testing.T) {
 func TestVerbs(t *testing.T) {
 	for verb, wants := range map[string][]string{
 		"look":     {"Small book", "storm", "required capital, one-year", "not a regulatory filing"},
-		"fit":      {"Curve all", "row 2", "left out", "wang", "chosen in the study"},
+		"fit":      {"Curve all", "row 2", "left out", "wang", "chosen"},
 		"appraise": {"no cover", "expiring", "= total cost", "layer 1", "40m xs 20m per event"},
 		"search":   {"Buy “best found”", "Frontier", "What the figures leave out", "tower 1"},
 	} {

@@ -1,12 +1,11 @@
 package cli
 
 import (
-	"bytes"
 	"context"
 	"errors"
 	"fmt"
 	"io"
-	"runtime/debug"
+	"runtime"
 	"strings"
 
 	"cedewright/cmd/internal/report"
@@ -29,8 +28,9 @@ type usageError struct{ error }
 // Run runs the command with these arguments and gives its exit code. It prints results to stdout, all else to stderr, and never panics.
 func Run(ctx context.Context, args []string, stdout, stderr io.Writer) (code int) {
 	defer func() {
-		if fault := recover(); fault != nil {
-			fmt.Fprintf(stderr, "cedewright: internal error, please report it with the study that caused it: %v\n%s", fault, debug.Stack())
+		if cause := recover(); cause != nil {
+			fmt.Fprintf(stderr, "cedewright: internal error%s: %v\n", whereFrom(), cause)
+			fmt.Fprintln(stderr, "cedewright: please report it with the study that caused it; nothing was written")
 			code = failed
 		}
 	}()
@@ -40,6 +40,23 @@ func Run(ctx context.Context, args []string, stdout, stderr io.Writer) (code int
 	root.SetErr(stderr)
 	err := root.ExecuteContext(ctx)
 	return tell(stderr, err)
+}
+
+// whereFrom names the place in this program where a panic began; it is called while the panic is being recovered.
+func whereFrom() string {
+	places := make([]uintptr, 64)
+	frames := runtime.CallersFrames(places[:runtime.Callers(2, places)])
+	panicked := false
+	for {
+		f, more := frames.Next()
+		panicked = panicked || f.Function == "runtime.gopanic"
+		if panicked && strings.HasPrefix(f.Function, "cedewright/") {
+			return fmt.Sprintf(" in %s, line %d", f.Function, f.Line)
+		}
+		if !more {
+			return ""
+		}
+	}
 }
 
 // tell prints an error, every fault on a line of its own, and gives the exit code.
@@ -144,14 +161,4 @@ func unknownFlag(c *cobra.Command, err error) error {
 		return fmt.Errorf("unknown flag --%s; did you mean --%s?", name, near)
 	}
 	return fmt.Errorf("unknown flag --%s; see cedewright %s --help", name, c.Name())
-}
-
-// print writes a result whole: it is built in memory first.
-func print(stdout io.Writer, build func(io.Writer) error) error {
-	var b bytes.Buffer
-	if err := build(&b); err != nil {
-		return err
-	}
-	_, err := stdout.Write(b.Bytes())
-	return err
 }

@@ -1,10 +1,12 @@
 package cli
 
 import (
+	"bytes"
 	"context"
 	"errors"
 	"fmt"
 	"io"
+	"os"
 
 	"cedewright/cmd/internal/report"
 	"cedewright/cmd/internal/settings"
@@ -13,14 +15,15 @@ import (
 	"cedewright/portfolio/fault"
 
 	"github.com/spf13/cobra"
+	"golang.org/x/term"
 )
 
 // answer is what a verb has to say, in every form.
 type answer struct {
-	text  func(io.Writer) error
+	text  func(io.Writer, report.Style)
 	json  func(io.Writer) error
-	files func() ([]report.File, error) // beside result.json
-	note  string                        // for standard error
+	files []report.File // beside result.json
+	note  string        // for standard error
 }
 
 // verb is a command on one study.
@@ -36,32 +39,29 @@ var verbs = []verb{
 	{"search", "Find the best programme and the frontier of margin against relief", runSearch},
 }
 
-// plain turns a printer that cannot fail into one that may.
-func plain[T any](print func(io.Writer, T), result T) func(io.Writer) error {
-	return func(w io.Writer) error { print(w, result); return nil }
-}
-
-// document does the same for a JSON document.
-func document[T any](write func(io.Writer, T) error, result T) func(io.Writer) error {
-	return func(w io.Writer) error { return write(w, result) }
-}
-
 func runLook(ctx context.Context, s *study.Study, _ settings.Run, _ *progress) (answer, error) {
 	l, err := s.Look(ctx)
-	return answer{text: plain(report.PrintLook, l), json: document(report.LookJSON, l)}, err
+	return answer{
+		text: func(w io.Writer, style report.Style) { report.PrintLook(w, l, style) },
+		json: func(w io.Writer) error { return report.LookJSON(w, l) },
+	}, err
 }
 
 func runFit(ctx context.Context, s *study.Study, _ settings.Run, _ *progress) (answer, error) {
 	f, err := s.Fit(ctx)
 	return answer{
-		text: plain(report.PrintFitted, f), json: document(report.FittedJSON, f),
-		files: func() ([]report.File, error) { return report.CurvePictures(f.Curves) },
+		text:  func(w io.Writer, style report.Style) { report.PrintFitted(w, f, style) },
+		json:  func(w io.Writer) error { return report.FittedJSON(w, f) },
+		files: report.CurvePictures(f.Curves),
 	}, err
 }
 
 func runAppraise(ctx context.Context, s *study.Study, _ settings.Run, _ *progress) (answer, error) {
 	a, err := s.Appraise(ctx)
-	return answer{text: plain(report.PrintAppraised, a), json: document(report.AppraisedJSON, a)}, err
+	return answer{
+		text: func(w io.Writer, style report.Style) { report.PrintAppraised(w, a, style) },
+		json: func(w io.Writer) error { return report.AppraisedJSON(w, a) },
+	}, err
 }
 
 func runSearch(ctx context.Context, s *study.Study, r settings.Run, p *progress) (answer, error) {
@@ -71,14 +71,28 @@ func runSearch(ctx context.Context, s *study.Study, r settings.Run, p *progress)
 	if err != nil {
 		return answer{}, err
 	}
+	effective := effectiveSettings(r, found.Result.Seed)
 	a := answer{
-		text: plain(report.PrintSearched, found), json: document(report.SearchedJSON, found),
-		files: func() ([]report.File, error) { return report.SearchFiles(found) },
+		text:  func(w io.Writer, style report.Style) { report.PrintSearched(w, found, style) },
+		json:  func(w io.Writer) error { return report.SearchedJSON(w, found, effective) },
+		files: report.SearchFiles(found, effective),
 	}
 	if found.Result.Status == optimize.Interrupted {
 		a.note = "interrupted: the result is the best so far"
 	}
 	return a, nil
+}
+
+// effectiveSettings lists what bears on the result of a search and where it came from. Workers, folders and the like do not.
+func effectiveSettings(r settings.Run, seed uint64) []report.Setting {
+	list := []report.Setting{{Name: "seed", Value: fmt.Sprint(seed), Origin: r.Origins["seed"]}}
+	for _, s := range []struct {
+		name  string
+		value int
+	}{{"population", r.Population}, {"generations", r.Generations}, {"evaluations", r.Evaluations}, {"patience", r.Patience}} {
+		list = append(list, report.Setting{Name: s.name, Value: fmt.Sprint(s.value), Origin: r.Origins[s.name]})
+	}
+	return list
 }
 
 // runVerb loads the study, runs the verb and hands out its answer.
@@ -111,19 +125,11 @@ func runVerb(ctx context.Context, v verb, c *cobra.Command, path string, stdout,
 		return err
 	}
 	p.close()
-	if r.Out != "" {
-		if err := writeFolder(a, r); err != nil {
-			return err
-		}
-		fmt.Fprintf(stderr, "cedewright: wrote %s\n", r.Out)
-	}
 	if a.note != "" {
 		fmt.Fprintf(stderr, "cedewright: %s\n", a.note)
 	}
-	if r.JSON {
-		return print(stdout, a.json)
-	}
-	return print(stdout, a.text)
+	// A folder that cannot be written must not lose the result: it is still printed.
+	return errors.Join(writeFolder(a, r, stderr), printAnswer(a, r, stdout))
 }
 
 // usageOr marks an error without faults as one of usage.
@@ -135,17 +141,41 @@ func usageOr(err error) error {
 }
 
 // writeFolder writes result.json and what else the verb makes.
-func writeFolder(a answer, r settings.Run) error {
-	files := []report.File{{Name: "result.json", Write: a.json}}
-	if a.files != nil {
-		more, err := a.files()
-		if err != nil {
+func writeFolder(a answer, r settings.Run, stderr io.Writer) error {
+	if r.Out == "" {
+		return nil
+	}
+	files := append([]report.File{{Name: "result.json", Write: a.json}}, a.files...)
+	if err := report.WriteFolder(r.Out, r.Replace, files); err != nil {
+		return err
+	}
+	fmt.Fprintf(stderr, "cedewright: wrote %s\n", r.Out)
+	return nil
+}
+
+// printAnswer writes a result whole: it is built in memory first.
+func printAnswer(a answer, r settings.Run, stdout io.Writer) error {
+	var b bytes.Buffer
+	if r.JSON {
+		if err := a.json(&b); err != nil {
 			return err
 		}
-		files = append(files, more...)
+	} else {
+		a.text(&b, styleOf(stdout, r.NoColor))
 	}
-	if err := report.WriteFolder(r.Out, r.Replace, files); err != nil {
-		return errors.Join(err)
+	_, err := stdout.Write(b.Bytes())
+	return err
+}
+
+// styleOf fits text to a terminal; elsewhere it is plain and of the usual width.
+func styleOf(stdout io.Writer, noColour bool) report.Style {
+	f, ok := stdout.(*os.File)
+	if !ok || !term.IsTerminal(int(f.Fd())) {
+		return report.Style{}
 	}
-	return nil
+	style := report.Style{Colour: !noColour && os.Getenv("TERM") != "dumb"}
+	if width, _, err := term.GetSize(int(f.Fd())); err == nil {
+		style.Width = width
+	}
+	return style
 }

@@ -2,232 +2,167 @@ package report
 
 import (
 	"fmt"
-	"html"
 	"math"
 	"strings"
 )
 
-// axis maps values to places on a picture.
-type axis struct {
-	low, high float64 // values at the ends
-	from, to  float64 // places of the ends
-	scale     scaling
-	label     string
-	format    func(float64) string
-}
+// frame is the room around the plot, for labels.
+type frame struct{ left, right, top, bottom float64 }
 
-// scaling is how values are spread along an axis.
-type scaling uint8
+// usual is the frame of most charts.
+var usual = frame{left: 66, right: 26, top: 14, bottom: 50}
 
-const (
-	linear scaling = iota
-	logarithmic
-	squareRoot
-)
-
-func (a axis) spread(x float64) float64 {
-	switch a.scale {
-	case logarithmic:
-		return math.Log(max(x, math.SmallestNonzeroFloat64))
-	case squareRoot:
-		return math.Sqrt(max(x, 0))
-	}
-	return x
-}
-
-// at gives the place of a value; values beyond the ends stop there.
-func (a axis) at(x float64) float64 {
-	low, high := a.spread(a.low), a.spread(a.high)
-	if high == low {
-		return (a.from + a.to) / 2
-	}
-	share := min(max((a.spread(x)-low)/(high-low), 0), 1)
-	return a.from + share*(a.to-a.from)
-}
-
-// ticks gives values that read well, about count of them.
-func (a axis) ticks(count int) []float64 {
-	var list []float64
-	if a.scale == logarithmic {
-		for power := math.Floor(math.Log10(a.low)); power <= math.Ceil(math.Log10(a.high)); power++ {
-			for _, m := range []float64{1, 2, 5} {
-				if x := m * math.Pow(10, power); x >= a.low*(1-1e-9) && x <= a.high*(1+1e-9) {
-					list = append(list, x)
-				}
-			}
-		}
-		return list
-	}
-	step := niceStep((a.high - a.low) / float64(count))
-	for x := math.Ceil(a.low/step-1e-9) * step; x <= a.high+step*1e-9 && len(list) < 50; x += step {
-		list = append(list, x)
-	}
-	return list
-}
-
-// niceStep rounds up to 1, 2 or 5 times a power of ten.
-func niceStep(x float64) float64 {
-	if !(x > 0) || math.IsInf(x, 0) {
-		return 1
-	}
-	power := math.Pow(10, math.Floor(math.Log10(x)))
-	for _, m := range []float64{1, 2, 5} {
-		if x <= m*power*(1+1e-9) {
-			return m * power
-		}
-	}
-	return 10 * power
-}
-
-// upTo gives an end of an axis that reads well, at or above x.
-func upTo(x float64) float64 {
-	if !(x > 0) {
-		return 1
-	}
-	step := niceStep(x / 5)
-	return math.Ceil(x/step-1e-9) * step
-}
-
-// chart is a picture under way.
+// chart is a picture under way: two axes and what is drawn so far.
 type chart struct {
 	width, height float64
 	x, y          axis
 	body          strings.Builder
+	taken         []box // places that labels keep clear of
 }
 
-// Margins of every chart, for labels of axes.
-const (
-	marginLeft   = 74
-	marginRight  = 24
-	marginTop    = 16
-	marginBottom = 50
-)
-
-func newChart(width, height float64, x, y axis) *chart {
+// newChart draws the axes of a picture; an axis without a format is not drawn.
+func newChart(width, height float64, room frame, x, y axis) *chart {
 	c := &chart{width: width, height: height, x: x, y: y}
-	c.x.from, c.x.to = marginLeft, width-marginRight
-	c.y.from, c.y.to = height-marginBottom, marginTop
-	c.axes()
+	c.x.from, c.x.to = room.left, width-room.right
+	c.y.from, c.y.to = height-room.bottom, room.top
+	c.yAxis()
+	c.xAxis()
 	return c
 }
 
-// axes draws grid lines, numbers and names.
-func (c *chart) axes() {
-	lastAt := math.Inf(-1)
-	for _, x := range c.x.ticks(7) {
-		at := c.x.at(x)
+func (c *chart) xAxis() {
+	if c.x.format == nil {
+		return
+	}
+	last := math.Inf(-1)
+	for _, v := range c.x.ticks(7) {
+		at, text := c.x.at(v), c.x.format(v)
 		c.line("grid", at, c.y.from, at, c.y.to)
-		text := c.x.format(x)
-		if width := 7 * float64(len([]rune(text))); at-lastAt > width {
-			c.text("tick", at, c.y.from+18, "middle", text)
-			lastAt = at
+		if half := textWidth(text, tickSize) / 2; at-half > last+8 {
+			c.text("tick", at, c.y.from+17, "middle", text)
+			c.taken = append(c.taken, box{at - half, c.y.from + 6, at + half, c.y.from + 20})
+			last = at + half
 		}
 	}
-	lastAt = math.Inf(1)
-	for _, y := range c.y.ticks(6) {
-		at := c.y.at(y)
-		c.line("grid", c.x.from, at, c.x.to, at)
-		if lastAt-at > 14 {
-			c.text("tick", c.x.from-8, at+4, "end", c.y.format(y))
-			lastAt = at
-		}
+	c.line("edge", c.x.from, c.y.from, c.x.to, c.y.from)
+	if c.x.label != "" {
+		c.text("axis", (c.x.from+c.x.to)/2, c.height-8, "middle", c.x.label)
 	}
-	c.text("axis", (c.x.from+c.x.to)/2, c.height-8, "middle", c.x.label)
-	fmt.Fprintf(&c.body, `<text class="axis" transform="translate(14 %s) rotate(-90)" text-anchor="middle">%s</text>`, place((c.y.from+c.y.to)/2), html.EscapeString(c.y.label))
 }
 
-// place writes a coordinate to a tenth of a pixel.
-func place(x float64) string { return strings.TrimSuffix(fmt.Sprintf("%.1f", x), ".0") }
+func (c *chart) yAxis() {
+	if c.y.format == nil {
+		return
+	}
+	last := math.Inf(1)
+	for _, v := range c.y.ticks(6) {
+		at := c.y.at(v)
+		c.line("grid", c.x.from, at, c.x.to, at)
+		if last-at > 15 {
+			text := c.y.format(v)
+			c.text("tick", c.x.from-8, at+4, "end", text)
+			c.taken = append(c.taken, box{c.x.from - 8 - textWidth(text, tickSize), at - 7, c.x.from - 8, at + 5})
+			last = at
+		}
+	}
+	if c.y.label != "" {
+		fmt.Fprintf(&c.body, `<text class="axis" transform="translate(14 %s) rotate(-90)" text-anchor="middle">%s</text>`, place((c.y.from+c.y.to)/2), escape(c.y.label))
+	}
+}
+
+// place writes a coordinate to a tenth of a unit of the picture.
+func place(x float64) string {
+	s := strings.TrimSuffix(fmt.Sprintf("%.1f", x), ".0")
+	if s == "-0" {
+		return "0"
+	}
+	return s
+}
 
 func (c *chart) line(class string, x1, y1, x2, y2 float64) {
 	fmt.Fprintf(&c.body, `<line class="%s" x1="%s" y1="%s" x2="%s" y2="%s"/>`, class, place(x1), place(y1), place(x2), place(y2))
 }
 
 func (c *chart) text(class string, x, y float64, anchor, text string) {
-	fmt.Fprintf(&c.body, `<text class="%s" x="%s" y="%s" text-anchor="%s">%s</text>`, class, place(x), place(y), anchor, html.EscapeString(text))
+	fmt.Fprintf(&c.body, `<text class="%s" x="%s" y="%s" text-anchor="%s">%s</text>`, class, place(x), place(y), anchor, escape(text))
 }
 
-// curve joins points, given as values.
+func (c *chart) rectangle(class string, left, top, width, height float64) {
+	fmt.Fprintf(&c.body, `<rect class="%s" x="%s" y="%s" width="%s" height="%s"/>`, class, place(left), place(top), place(max(width, 0)), place(max(height, 0)))
+}
+
+// curve joins points, given as values, and keeps labels off the line.
 func (c *chart) curve(class string, xs, ys []float64) {
 	var points []string
 	for i := range xs {
-		points = append(points, place(c.x.at(xs[i]))+","+place(c.y.at(ys[i])))
+		if math.IsNaN(xs[i]) || math.IsNaN(ys[i]) {
+			continue
+		}
+		x, y := c.x.at(xs[i]), c.y.at(ys[i])
+		points = append(points, place(x)+","+place(y))
+		c.avoid(x, y)
+		if i > 0 && !math.IsNaN(ys[i-1]) { // and off the way between two points
+			c.avoidLine(c.x.at(xs[i-1]), c.y.at(ys[i-1]), x, y)
+		}
 	}
-	fmt.Fprintf(&c.body, `<polyline class="%s" points="%s"/>`, class, strings.Join(points, " "))
+	if len(points) > 0 {
+		fmt.Fprintf(&c.body, `<polyline class="%s" points="%s"/>`, class, strings.Join(points, " "))
+	}
 }
 
-// mark draws a point in a shape of its own, so that colour need not tell it.
+// area fills the polygon of points, given as values.
+func (c *chart) area(class string, xs, ys []float64) {
+	points := make([]string, len(xs))
+	for i := range xs {
+		points[i] = place(c.x.at(xs[i])) + "," + place(c.y.at(ys[i]))
+	}
+	fmt.Fprintf(&c.body, `<polygon class="%s" points="%s"/>`, class, strings.Join(points, " "))
+}
+
+// avoidLine keeps labels off a line between two places.
+func (c *chart) avoidLine(fromX, fromY, x, y float64) {
+	steps := math.Ceil(math.Hypot(x-fromX, y-fromY) / 10)
+	for k := 1.0; k < steps; k++ {
+		c.avoid(fromX+(x-fromX)*k/steps, fromY+(y-fromY)*k/steps)
+	}
+}
+
+func (c *chart) avoid(x, y float64) { c.taken = append(c.taken, box{x - 2, y - 2, x + 2, y + 2}) }
+
+// mark draws a point in a shape of its own, so that colour need not tell it; the title shows where the pointer rests.
 func (c *chart) mark(class, shape string, x, y float64, title string) {
 	px, py := c.x.at(x), c.y.at(y)
-	fmt.Fprintf(&c.body, `<g class="%s"><title>%s</title>`, class, html.EscapeString(title))
+	fmt.Fprintf(&c.body, `<g class="%s"><title>%s</title>%s</g>`, class, escape(title), shapeOf(shape, px, py))
+	c.taken = append(c.taken, box{px - 7, py - 7, px + 7, py + 7})
+}
+
+// shapeOf gives a mark about ten units across.
+func shapeOf(shape string, x, y float64) string {
 	switch shape {
 	case "circle":
-		fmt.Fprintf(&c.body, `<circle cx="%s" cy="%s" r="5"/>`, place(px), place(py))
+		return fmt.Sprintf(`<circle cx="%s" cy="%s" r="5.5"/>`, place(x), place(y))
 	case "dot":
-		fmt.Fprintf(&c.body, `<circle cx="%s" cy="%s" r="2.6"/>`, place(px), place(py))
+		return fmt.Sprintf(`<circle cx="%s" cy="%s" r="2.4"/>`, place(x), place(y))
 	case "square":
-		fmt.Fprintf(&c.body, `<rect x="%s" y="%s" width="10" height="10"/>`, place(px-5), place(py-5))
+		return fmt.Sprintf(`<rect x="%s" y="%s" width="10" height="10"/>`, place(x-5), place(y-5))
 	case "triangle":
-		fmt.Fprintf(&c.body, `<path d="M%s %sl6 11h-12z"/>`, place(px), place(py-7))
-	default: // diamond
-		fmt.Fprintf(&c.body, `<path d="M%s %sl7 8-7 8-7-8z"/>`, place(px), place(py-8))
+		return fmt.Sprintf(`<path d="M%s %sl6 11h-12z"/>`, place(x), place(y-7))
 	}
-	c.body.WriteString("</g>")
+	return fmt.Sprintf(`<path d="M%s %sl7 8-7 8-7-8z"/>`, place(x), place(y-8)) // diamond
 }
 
-// label is a text beside a point.
-type label struct {
-	x, y float64 // place of the point
-	text string
-}
-
-// labels writes texts beside points, moved apart so that they do not overlap, with a thin line back to the point where one was moved far.
-func (c *chart) labels(list []label) {
-	const lineHeight = 15
-	used := [][4]float64{} // left, top, right, bottom of what is written
-	for _, l := range list {
-		width := 6.7 * float64(len([]rune(l.text)))
-		anchor, x := "start", l.x+11
-		if x+width > c.width-2 {
-			anchor, x = "end", l.x-11
-		}
-		left := x
-		if anchor == "end" {
-			left = x - width
-		}
-		best := l.y + 4
-		for k := range 40 {
-			offset := float64((k+1)/2*lineHeight) * float64(1-2*(k%2))
-			y := l.y + 4 + offset
-			box := [4]float64{left, y - 12, left + width, y + 3}
-			if y > marginTop && y < c.height-marginBottom+10 && !hits(used, box) {
-				best = y
-				break
-			}
-		}
-		used = append(used, [4]float64{left, best - 12, left + width, best + 3})
-		if math.Abs(best-l.y-4) > lineHeight {
-			c.line("leader", l.x, l.y, x, best-4)
-		}
-		c.text("label", x, best, anchor, l.text)
+// whiskers draw one standard error to each side of a point, given as values.
+func (c *chart) whiskers(class string, x, y, xError, yError float64) {
+	if xError > 0 && finite(xError) {
+		c.line(class, c.x.at(x-xError), c.y.at(y), c.x.at(x+xError), c.y.at(y))
 	}
-}
-
-func hits(boxes [][4]float64, b [4]float64) bool {
-	for _, o := range boxes {
-		if b[0] < o[2] && o[0] < b[2] && b[1] < o[3] && o[1] < b[3] {
-			return true
-		}
+	if yError > 0 && finite(yError) {
+		c.line(class, c.x.at(x), c.y.at(y-yError), c.x.at(x), c.y.at(y+yError))
 	}
-	return false
 }
 
 // svg closes the picture; title says what it shows, description adds what the eye would read off it.
 func (c *chart) svg(title, description string) string {
-	return svgOf(c.width, c.height, title, description, c.body.String())
-}
-
-func svgOf(width, height float64, title, description, body string) string {
 	return fmt.Sprintf(`<svg class="picture" role="img" viewBox="0 0 %s %s" xmlns="http://www.w3.org/2000/svg"><title>%s</title><desc>%s</desc>%s</svg>`,
-		place(width), place(height), html.EscapeString(title), html.EscapeString(description), body)
+		place(c.width), place(c.height), escape(title), escape(description), c.body.String())
 }

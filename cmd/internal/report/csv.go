@@ -9,37 +9,43 @@ import (
 	"cedewright/cmd/internal/study"
 )
 
-// FrontierCSV writes the frontier, a programme a row, money in the study's currency.
+// FrontierCSV writes the frontier, a programme a row by rising relief, money in the study's currency, terms in words. A figure without a
+// value is an empty cell.
 func FrontierCSV(w io.Writer, s study.Searched) error {
-	out := csv.NewWriter(w)
 	rows := [][]string{{"programme", "capital_relief", "capital_relief_error", "ceded_margin", "ceded_margin_error", "total_cost", "total_cost_error",
-		"required_capital", "ceded_premium", "rent", "treaties", "terms"}}
-	number := func(x float64) string { return strconv.FormatFloat(x, 'g', 12, 64) }
+		"required_capital", "required_capital_error", "ceded_premium", "rent", "treaties", "terms"}}
+	figure := func(x float64) string {
+		if !finite(x) {
+			return ""
+		}
+		return strconv.FormatFloat(x, 'g', 12, 64)
+	}
 	for _, p := range s.Result.Frontier {
 		var terms []string
 		for _, t := range p.Treaties {
-			terms = append(terms, t.Terms.Name+": "+t.Terms.Describe(Money))
+			terms = append(terms, t.Terms.Name+": "+t.Terms.Describe(Terms))
 		}
 		rent := ""
 		if p.RentDefined {
-			rent = number(p.Rent.Value)
+			rent = figure(p.Rent.Value)
 		}
 		c := p.Capital[0]
 		rows = append(rows, []string{
-			harmless(p.Programme.Name), number(c.Relief.Value), number(c.Relief.StandardError), number(p.CededMargin.Value), number(p.CededMargin.StandardError),
-			number(p.TotalCost.Value), number(p.TotalCost.StandardError), number(c.Net.Value), number(p.CededPremium.Value), rent,
+			harmless(p.Programme.Name), figure(c.Relief.Value), figure(c.Relief.StandardError), figure(p.CededMargin.Value), figure(p.CededMargin.StandardError),
+			figure(p.TotalCost.Value), figure(p.TotalCost.StandardError), figure(c.Net.Value), figure(c.Net.StandardError), figure(p.CededPremium.Value), rent,
 			strconv.Itoa(len(p.Treaties)), harmless(strings.Join(terms, "; ")),
 		})
 	}
+	out := csv.NewWriter(w)
 	if err := out.WriteAll(rows); err != nil {
 		return err
 	}
 	return out.Error()
 }
 
-// harmless keeps a spreadsheet from reading text as a formula.
+// harmless keeps a spreadsheet from reading text as a formula, whatever blanks stand before its first sign.
 func harmless(text string) string {
-	if text != "" && strings.ContainsRune("=+-@\t\r", rune(text[0])) {
+	if first := strings.TrimLeft(text, " \u00a0"); first != "" && strings.ContainsRune("=+-@\t\r\n", []rune(first)[0]) {
 		return "'" + text
 	}
 	return text

@@ -2,12 +2,14 @@ package report
 
 import (
 	"bufio"
+	"encoding/json"
 	"errors"
 	"fmt"
 	"io"
 	"io/fs"
 	"os"
 	"path/filepath"
+	"strings"
 
 	"cedewright/portfolio/fault"
 )
@@ -21,38 +23,78 @@ type File struct {
 // marker is the file by which a folder of results is known.
 const marker = "result.json"
 
-// CheckFolder tells, before a long run, whether WriteFolder would refuse the folder.
+// ours tells whether a file of that name is one that this program writes into a folder of results.
+func ours(name string) bool {
+	if name == marker || name == "frontier.csv" || name == "report.html" {
+		return true
+	}
+	return strings.HasPrefix(name, "curve-") && strings.HasSuffix(name, ".svg")
+}
+
+// CheckFolder tells, before a long run, whether WriteFolder would refuse the folder: it takes a new one, an empty one, or with replace one
+// that holds nothing but earlier results.
 func CheckFolder(folder string, replace bool) error {
 	info, err := os.Stat(folder)
-	if errors.Is(err, fs.ErrNotExist) {
-		if parent := filepath.Dir(filepath.Clean(folder)); parent != "." {
-			if info, err := os.Stat(parent); err != nil || !info.IsDir() {
-				return &fault.Fault{Key: "--out", Found: fmt.Sprintf("the folder %q, in which %q would lie, is not there", parent, folder), Allowed: "a folder that exists, for the new one to lie in"}
-			}
-		}
-		return nil
-	}
-	if err != nil {
-		return &fault.Fault{Key: "--out", Found: fmt.Sprintf("%q cannot be used", folder), Err: err}
-	}
-	if !info.IsDir() {
-		return &fault.Fault{Key: "--out", Found: fmt.Sprintf("%q is a file", folder), Allowed: "the name of a folder"}
+	switch {
+	case errors.Is(err, fs.ErrNotExist):
+		return checkParent(folder)
+	case err != nil:
+		return folderFault(fmt.Sprintf("%q cannot be used", folder), "", bare(err))
+	case !info.IsDir():
+		return folderFault(fmt.Sprintf("%q is a file", folder), "the name of a folder", nil)
 	}
 	entries, err := os.ReadDir(folder)
 	if err != nil {
-		return &fault.Fault{Key: "--out", Found: fmt.Sprintf("%q cannot be read", folder), Err: err}
+		return folderFault(fmt.Sprintf("%q cannot be read", folder), "", bare(err))
 	}
-	if len(entries) == 0 {
-		return nil
+	for _, e := range entries {
+		if !ours(e.Name()) || e.IsDir() {
+			return folderFault(fmt.Sprintf("%q holds %q, which is not a result of this program", folder, e.Name()), "a new folder, an empty one, or one with nothing but results and --replace", nil)
+		}
 	}
-	_, err = os.Stat(filepath.Join(folder, marker))
 	switch {
-	case err != nil:
-		return &fault.Fault{Key: "--out", Found: fmt.Sprintf("%q holds files that are not results of this program", folder), Allowed: "a new folder, an empty one, or one with results and --replace"}
+	case len(entries) == 0:
+	case !isResult(filepath.Join(folder, marker)):
+		return folderFault(fmt.Sprintf("%q holds files that are not results of this program", folder), "a new folder, an empty one, or one with nothing but results and --replace", nil)
 	case !replace:
-		return &fault.Fault{Key: "--out", Found: fmt.Sprintf("%q holds results already", folder), Allowed: "another folder, or --replace"}
+		return folderFault(fmt.Sprintf("%q holds results already", folder), "another folder, or --replace", nil)
 	}
-	return nil
+	return checkParent(folder)
+}
+
+func folderFault(found, allowed string, err error) error {
+	return &fault.Fault{Key: "--out", Found: found, Allowed: allowed, Err: err}
+}
+
+// bare gives the cause of an error of the file system without the path, which the message names already.
+func bare(err error) error {
+	if p := (*fs.PathError)(nil); errors.As(err, &p) {
+		return p.Err
+	}
+	return err
+}
+
+// isResult tells whether a file is a document of this program.
+func isResult(path string) bool {
+	data, err := os.ReadFile(path)
+	if err != nil {
+		return false
+	}
+	var document struct{ Program string }
+	return json.Unmarshal(data, &document) == nil && strings.HasPrefix(document.Program, "cedewright")
+}
+
+// checkParent sees to it that a folder can be made beside the one that is asked for.
+func checkParent(folder string) error {
+	parent := filepath.Dir(filepath.Clean(folder))
+	if info, err := os.Stat(parent); err != nil || !info.IsDir() {
+		return folderFault(fmt.Sprintf("the folder %q, in which %q would lie, is not there", parent, folder), "a folder that exists, for the new one to lie in", nil)
+	}
+	trial, err := os.MkdirTemp(parent, ".cedewright-")
+	if err != nil {
+		return folderFault(fmt.Sprintf("nothing can be written to %q", parent), "a folder to which you may write", bare(err))
+	}
+	return os.Remove(trial)
 }
 
 // WriteFolder writes files into a folder, whole or not at all: they are written into a new folder beside it, which then takes its place.
@@ -61,6 +103,9 @@ func WriteFolder(folder string, replace bool, files []File) (err error) {
 		return err
 	}
 	folder = filepath.Clean(folder)
+	if real, err := filepath.EvalSymlinks(folder); err == nil {
+		folder = real // a link stays a link
+	}
 	fresh, err := os.MkdirTemp(filepath.Dir(folder), "."+filepath.Base(folder)+"-new-")
 	if err != nil {
 		return fmt.Errorf("report: write results: %w", err)

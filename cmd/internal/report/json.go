@@ -1,9 +1,7 @@
 package report
 
 import (
-	"encoding/json"
 	"io"
-	"math"
 
 	"cedewright/cmd/internal/study"
 	"cedewright/market"
@@ -14,248 +12,201 @@ import (
 // The names of these fields are a contract: scripts rely on them. Fields may be added, not renamed. Money is in the study's currency,
 // amounts per year, fractions and probabilities of 1; "standard_errors" mirrors the figures beside it. A figure without a value is null.
 
-// number writes null for what is no number: JSON has no NaN and no infinity.
-type number float64
-
-// MarshalJSON writes the number.
-func (n number) MarshalJSON() ([]byte, error) {
-	if math.IsNaN(float64(n)) || math.IsInf(float64(n), 0) {
-		return []byte("null"), nil
-	}
-	return json.Marshal(float64(n))
+// AppraisedJSON writes the answer of appraise.
+func AppraisedJSON(w io.Writer, a study.Appraised) error {
+	return write(w, append(head(a.Head), appraised(a)...))
 }
 
-// object is a group of keys; encoding/json writes them by alphabet, the same on every run.
-type object = map[string]any
+// SearchedJSON writes the answer of search.
+func SearchedJSON(w io.Writer, s study.Searched, run []Setting) error {
+	r := s.Result
+	o := append(head(s.Head), object{
+		{"status", r.Status.String()}, {"feasible", r.Feasible}, {"polished", r.Polished}, {"seed", r.Seed}, {"evaluations", r.Evaluations},
+		{"generations", r.Generations}, {"space", s.Space}, {"space_size", number(r.SpaceSize)}, {"keep", objects(s.Keep, keepJSON)},
+		{"shortfalls", objects(r.Shortfalls, func(f optimize.Shortfall) object { return append(keepJSON(f.Keep), field{"value", number(f.Value)}) })},
+		{"settings", objects(run, func(s Setting) object { return object{{"name", s.Name}, {"value", s.Value}, {"origin", s.Origin}} })},
+		{"recommendation", Recommendation(s)}, {"bound", bound(s)}, {"best", programme(r.Best)},
+	}...)
+	o = append(o, appraised(s.Appraised)...)
+	o = append(o, field{"frontier", objects(r.Frontier, programme)}, field{"exceedance", exceedance(s.Curve)})
+	return write(w, o)
+}
 
-func head(h study.Head) object {
-	inputs := make([]object, len(h.Inputs))
-	for i, in := range h.Inputs {
-		inputs[i] = object{"path": in.Path, "sha256": in.SHA256, "rows": in.Rows}
+// bound says below which total cost no programme of the space lies, when that is known.
+func bound(s study.Searched) object {
+	if s.Result.Status == optimize.Proven && s.Result.Feasible {
+		return object{{"total_cost", number(s.Result.Best.TotalCost.Value)}, {"reason", s.Result.Status.String()}}
 	}
+	return object{{"total_cost", none}, {"reason", "not known: the space was searched, not exhausted"}}
+}
+
+func keepJSON(k optimize.Keep) object {
+	o := object{{"measure", k.Measure}}
+	if k.Standard != "" {
+		o = append(o, field{"standard", k.Standard})
+	}
+	if k.AtMost.Given {
+		o = append(o, field{"at_most", number(k.AtMost.Value)})
+	}
+	if k.AtLeast.Given {
+		o = append(o, field{"at_least", number(k.AtLeast.Value)})
+	}
+	return o
+}
+
+func exceedance(e study.ExceedanceCurves) object {
+	net := make([]object, len(e.Net))
+	for i, losses := range e.Net {
+		net[i] = object{{"programme", e.Programmes[i]}, {"annual_loss", numbers(losses)}}
+	}
+	return object{{"return_periods", numbers(e.ReturnPeriods)}, {"gross", numbers(e.Gross)}, {"net", net}}
+}
+
+func appraised(a study.Appraised) object {
 	return object{
-		"study": h.Title, "currency": h.Currency, "years": h.Years, "seed": h.Seed, "inputs": inputs,
-		"notes": list(h.Notes), "warnings": list(h.Warnings), "caution": Caution, "program": Version(),
+		{"cost_of_capital", number(a.CostOfCapital)}, {"own_funds", number(a.OwnFunds)},
+		{"gross", object{
+			{"premium", number(a.Gross.Premium)}, {"expenses", number(a.Gross.Expenses)}, {"expected_loss", number(a.Gross.Loss.Value)},
+			{"standard_errors", object{{"expected_loss", number(a.Gross.Loss.StandardError)}}},
+			{"capital", objects(a.Gross.Capital, capitalJSON)}, {"net_result", resultJSON(a.Gross.Result)},
+		}},
+		{"programmes", objects(a.Programmes, programme)},
+		{"differences", objects(a.Differences, func(d study.Difference) object {
+			return object{{"programme", d.Programme}, {"against", d.Against}, {"total_cost", number(d.TotalCost.Value)}, {"standard_error", number(d.TotalCost.StandardError)}}
+		})},
 	}
 }
 
-// list gives an empty list, not null, for nil.
-func list[T any](items []T) []T {
-	if items == nil {
-		return []T{}
+func capitalJSON(c optimize.CapitalFigure) object {
+	return object{
+		{"standard", c.Standard}, {"gross", number(c.Gross.Value)}, {"net", number(c.Net.Value)}, {"relief", number(c.Relief.Value)},
+		{"standard_error", number(c.Net.StandardError)},
+		{"standard_errors", object{{"gross", number(c.Gross.StandardError)}, {"net", number(c.Net.StandardError)}, {"relief", number(c.Relief.StandardError)}}},
 	}
-	return items
-}
-
-func estimate(e optimize.Estimate) object {
-	return object{"value": number(e.Value), "standard_error": number(e.StandardError)}
-}
-
-func capitalJSON(figures []optimize.CapitalFigure) []object {
-	all := make([]object, len(figures))
-	for i, c := range figures {
-		all[i] = object{
-			"standard": c.Standard, "gross": number(c.Gross.Value), "net": number(c.Net.Value), "relief": number(c.Relief.Value),
-			"standard_error":  number(c.Net.StandardError),
-			"standard_errors": object{"gross": number(c.Gross.StandardError), "net": number(c.Net.StandardError), "relief": number(c.Relief.StandardError)},
-		}
-	}
-	return all
 }
 
 func resultJSON(r optimize.NetResult) object {
 	return object{
-		"mean": number(r.Mean.Value), "sd": number(r.StandardDeviation), "one_in_10": number(r.OneIn10.Value), "one_in_200": number(r.OneIn200.Value),
-		"standard_errors": object{"mean": number(r.Mean.StandardError), "one_in_10": number(r.OneIn10.StandardError), "one_in_200": number(r.OneIn200.StandardError)},
+		{"mean", number(r.Mean.Value)}, {"sd", number(r.StandardDeviation)}, {"one_in_10", number(r.OneIn10.Value)}, {"one_in_200", number(r.OneIn200.Value)},
+		{"standard_errors", object{{"mean", number(r.Mean.StandardError)}, {"one_in_10", number(r.OneIn10.StandardError)}, {"one_in_200", number(r.OneIn200.StandardError)}}},
 	}
 }
 
 // programme writes an appraisal.
 func programme(a optimize.Appraisal) object {
-	treaties := make([]object, len(a.Treaties))
-	for i, t := range a.Treaties {
-		treaties[i] = treatyJSON(t)
+	rent, rentError := none, none
+	if a.RentDefined {
+		rent, rentError = number(a.Rent.Value), number(a.Rent.StandardError)
 	}
 	ratios := make([]object, len(a.OwnFundsRatio))
 	for i, r := range a.OwnFundsRatio {
-		ratios[i] = object{"standard": a.Capital[i].Standard, "value": number(r.Value), "standard_error": number(r.StandardError)}
-	}
-	rent := number(math.NaN())
-	if a.RentDefined {
-		rent = number(a.Rent.Value)
+		ratios[i] = append(object{{"standard", a.Capital[i].Standard}}, estimate(r)...)
 	}
 	return object{
-		"name": a.Programme.Name, "ceded_premium": number(a.CededPremium.Value), "expected_recoveries": number(a.ExpectedRecoveries.Value),
-		"reinstatement_premium": number(a.ReinstatementPremium.Value), "commission": number(a.Commission.Value),
-		"ceded_margin": number(a.CededMargin.Value), "capital": capitalJSON(a.Capital), "capital_cost": number(a.CapitalCost.Value),
-		"total_cost": number(a.TotalCost.Value), "rent": rent, "own_funds_ratio": ratios, "net_result": resultJSON(a.NetResult), "treaties": treaties,
-		"standard_errors": object{
-			"ceded_premium": number(a.CededPremium.StandardError), "expected_recoveries": number(a.ExpectedRecoveries.StandardError),
-			"reinstatement_premium": number(a.ReinstatementPremium.StandardError), "commission": number(a.Commission.StandardError),
-			"ceded_margin": number(a.CededMargin.StandardError), "capital_cost": number(a.CapitalCost.StandardError),
-			"total_cost": number(a.TotalCost.StandardError), "rent": number(a.Rent.StandardError),
-		},
+		{"name", a.Programme.Name}, {"ceded_premium", number(a.CededPremium.Value)}, {"expected_recoveries", number(a.ExpectedRecoveries.Value)},
+		{"reinstatement_premium", number(a.ReinstatementPremium.Value)}, {"commission", number(a.Commission.Value)},
+		{"ceded_margin", number(a.CededMargin.Value)}, {"capital", objects(a.Capital, capitalJSON)}, {"capital_cost", number(a.CapitalCost.Value)},
+		{"total_cost", number(a.TotalCost.Value)}, {"rent", rent}, {"own_funds_ratio", ratios}, {"net_result", resultJSON(a.NetResult)},
+		{"standard_errors", object{
+			{"ceded_premium", number(a.CededPremium.StandardError)}, {"expected_recoveries", number(a.ExpectedRecoveries.StandardError)},
+			{"reinstatement_premium", number(a.ReinstatementPremium.StandardError)}, {"commission", number(a.Commission.StandardError)},
+			{"ceded_margin", number(a.CededMargin.StandardError)}, {"capital_cost", number(a.CapitalCost.StandardError)},
+			{"total_cost", number(a.TotalCost.StandardError)}, {"rent", rentError},
+		}},
+		{"treaties", objects(a.Treaties, treatyJSON)},
 	}
 }
 
 func treatyJSON(f optimize.TreatyFigure) object {
 	t := f.Terms
-	o := object{
-		"name": t.Name, "kind": t.Kind.String(), "premium": number(f.Premium.Value), "base_premium": number(f.BasePremium), "rate_on_line": number(f.RateOnLine),
-		"reinstatement_premium": number(f.ReinstatementPremium.Value), "commission": number(f.Commission), "expected_recovery": number(f.ExpectedRecovery.Value),
-		"attachment_probability": number(f.AttachmentProbability.Value), "exhaustion_probability": number(f.ExhaustionProbability.Value),
-		"margin": number(f.Margin.Value), "relief": number(f.Relief.Value), "priced_by": f.PricedBy,
-		"classes": list(t.Classes), "perils": list(t.Perils), "after": list(t.After),
-		"standard_errors": object{
-			"premium": number(f.Premium.StandardError), "reinstatement_premium": number(f.ReinstatementPremium.StandardError),
-			"expected_recovery": number(f.ExpectedRecovery.StandardError), "margin": number(f.Margin.StandardError), "relief": number(f.Relief.StandardError),
-			"attachment_probability": number(f.AttachmentProbability.StandardError), "exhaustion_probability": number(f.ExhaustionProbability.StandardError),
-		},
-	}
+	o := object{{"name", t.Name}, {"kind", t.Kind.String()}, {"classes", texts(t.Classes)}, {"perils", texts(t.Perils)}, {"after", texts(t.After)}}
 	if t.Kind == treaty.QuotaShare {
-		o["cession"], o["commission_rate"] = t.Cession, number(f.CommissionRate)
-		return o
+		o = append(o, field{"cession", number(t.Cession)}, field{"commission_rate", number(f.CommissionRate)})
+	} else {
+		o = append(o, field{"retention", number(t.Retention)}, field{"limit", number(t.Limit)}, field{"share", number(t.Share)})
 	}
-	o["retention"], o["limit"], o["share"] = number(t.Retention), number(t.Limit), number(t.Share)
-	o["annual_deductible"], o["annual_limit"], o["event_limit"] = number(t.AnnualDeductible), number(t.AnnualRecoveryLimit()), number(t.EventLimit)
-	if t.Reinstatements != nil {
-		o["reinstatements"] = t.Reinstatements
-	}
-	return o
-}
-
-func programmes(all []optimize.Appraisal) []object {
-	list := make([]object, len(all))
-	for i, a := range all {
-		list[i] = programme(a)
-	}
-	return list
-}
-
-func appraised(a study.Appraised) object {
-	o := head(a.Head)
-	o["cost_of_capital"], o["own_funds"] = number(a.CostOfCapital), number(a.OwnFunds)
-	o["gross"] = object{
-		"premium": number(a.Gross.Premium), "expenses": number(a.Gross.Expenses), "expected_loss": number(a.Gross.Loss.Value),
-		"standard_errors": object{"expected_loss": number(a.Gross.Loss.StandardError)},
-		"capital":         capitalJSON(a.Gross.Capital), "net_result": resultJSON(a.Gross.Result),
-	}
-	o["programmes"] = programmes(a.Programmes)
-	differences := make([]object, len(a.Differences))
-	for i, d := range a.Differences {
-		differences[i] = object{"programme": d.Programme, "against": d.Against, "total_cost": number(d.TotalCost.Value), "standard_error": number(d.TotalCost.StandardError)}
-	}
-	o["differences"] = differences
-	return o
-}
-
-// AppraisedJSON writes the answer of appraise.
-func AppraisedJSON(w io.Writer, a study.Appraised) error { return write(w, appraised(a)) }
-
-// SearchedJSON writes the answer of search.
-func SearchedJSON(w io.Writer, s study.Searched) error {
-	o := appraised(s.Appraised)
-	o["best"] = programme(s.Result.Best)
-	o["frontier"] = programmes(s.Result.Frontier)
-	o["evaluations"], o["generations"], o["seed"] = s.Result.Evaluations, s.Result.Generations, s.Result.Seed
-	o["book_seed"] = s.Head.Seed
-	o["status"], o["feasible"], o["polished"] = s.Result.Status.String(), s.Result.Feasible, s.Result.Polished
-	o["space"], o["keep"] = s.Space, list(keepWords(s.Keep))
-	shortfalls := make([]object, len(s.Result.Shortfalls))
-	for i, f := range s.Result.Shortfalls {
-		shortfalls[i] = object{"measure": f.Keep.Measure, "value": number(f.Value)}
-		if f.Keep.AtMost.Given {
-			shortfalls[i]["at_most"] = number(f.Keep.AtMost.Value)
-		}
-		if f.Keep.AtLeast.Given {
-			shortfalls[i]["at_least"] = number(f.Keep.AtLeast.Value)
+	if t.Kind == treaty.EventExcess || t.Kind == treaty.RiskExcess {
+		o = append(o, field{"annual_deductible", number(t.AnnualDeductible)}, field{"annual_limit", number(t.AnnualRecoveryLimit())})
+		if t.Reinstatements != nil {
+			o = append(o, field{"reinstatements", numbers(t.Reinstatements)})
 		}
 	}
-	o["shortfalls"] = shortfalls
-	return write(w, o)
+	if t.Kind == treaty.RiskExcess && t.EventLimit > 0 {
+		o = append(o, field{"event_limit", number(t.EventLimit)})
+	}
+	return append(o, object{
+		{"priced_by", f.PricedBy}, {"premium", number(f.Premium.Value)}, {"base_premium", number(f.BasePremium)}, {"rate_on_line", number(f.RateOnLine)},
+		{"reinstatement_premium", number(f.ReinstatementPremium.Value)}, {"commission", number(f.Commission)}, {"expected_recovery", number(f.ExpectedRecovery.Value)},
+		{"attachment_probability", number(f.AttachmentProbability.Value)}, {"exhaustion_probability", number(f.ExhaustionProbability.Value)},
+		{"margin", number(f.Margin.Value)}, {"relief", number(f.Relief.Value)},
+		{"standard_errors", object{
+			{"premium", number(f.Premium.StandardError)}, {"reinstatement_premium", number(f.ReinstatementPremium.StandardError)},
+			{"expected_recovery", number(f.ExpectedRecovery.StandardError)}, {"attachment_probability", number(f.AttachmentProbability.StandardError)},
+			{"exhaustion_probability", number(f.ExhaustionProbability.StandardError)}, {"margin", number(f.Margin.StandardError)}, {"relief", number(f.Relief.StandardError)},
+		}},
+	}...)
 }
 
 // LookJSON writes the answer of look.
 func LookJSON(w io.Writer, l study.Look) error {
-	o := head(l.Head)
 	class := func(c study.ClassLook) object {
 		return object{
-			"name": c.Name, "premium": number(c.Premium), "expenses": number(c.Expenses), "expected_loss": estimate(c.Loss), "sd": number(c.SD),
-			"one_in_10": number(c.OneIn10), "one_in_200": number(c.OneIn200), "events": number(c.Events),
+			{"name", c.Name}, {"premium", number(c.Premium)}, {"expenses", number(c.Expenses)}, {"expected_loss", estimate(c.Loss)}, {"sd", number(c.SD)},
+			{"one_in_10", number(c.OneIn10)}, {"one_in_200", number(c.OneIn200)}, {"events", number(c.Events)},
 		}
 	}
-	classes := make([]object, len(l.Classes))
-	for i, c := range l.Classes {
-		classes[i] = class(c)
-	}
-	perils := make([]object, len(l.Perils))
-	for i, p := range l.Perils {
-		perils[i] = object{
-			"name": p.Name, "events": number(p.Events), "expected_loss": estimate(p.Loss), "return_periods": study.ReturnPeriods,
-			"largest_event": p.LargestOneIn, "annual_loss": p.AnnualOneIn, "largest_simulated": number(p.LargestOfBook),
+	peril := func(p study.PerilLook) object {
+		return object{
+			{"name", p.Name}, {"events", number(p.Events)}, {"expected_loss", estimate(p.Loss)}, {"return_periods", numbers(study.ReturnPeriods)},
+			{"largest_event", numbers(p.LargestOneIn)}, {"annual_loss", numbers(p.AnnualOneIn)}, {"largest_simulated", number(p.LargestOfBook)},
 		}
 	}
-	fits := make([]object, len(l.Fits))
-	for i, f := range l.Fits {
-		fits[i] = object{
-			"model": f.Model, "file": f.File, "losses": f.Losses, "years": f.Years, "threshold": f.Threshold, "exceedances": f.Exceedances,
-			"xi": f.Xi, "beta": f.Beta, "standard_errors": object{"xi": f.XiError, "beta": f.BetaError}, "frequency": f.Frequency,
-			"largest_loss": f.LargestLoss, "extrapolation": f.Extrapolation,
+	history := func(f study.HistoryFit) object {
+		return object{
+			{"model", f.Model}, {"file", f.File}, {"losses", f.Losses}, {"years", f.Years}, {"threshold", number(f.Threshold)}, {"exceedances", f.Exceedances},
+			{"xi", number(f.Xi)}, {"beta", number(f.Beta)}, {"standard_errors", object{{"xi", number(f.XiError)}, {"beta", number(f.BetaError)}}},
+			{"frequency", f.Frequency}, {"largest_loss", number(f.LargestLoss)}, {"extrapolation", f.Extrapolation},
 		}
 	}
-	o["classes"], o["total"], o["perils"], o["fits"] = classes, class(l.Total), perils, fits
-	o["gross"] = object{"capital": capitalJSON(l.Gross.Capital), "net_result": resultJSON(l.Gross.NetResult)}
-	return write(w, o)
+	return write(w, append(head(l.Head), object{
+		{"classes", objects(l.Classes, class)}, {"total", class(l.Total)}, {"perils", objects(l.Perils, peril)}, {"fits", objects(l.Fits, history)},
+		{"gross", object{{"capital", objects(l.Gross.Capital, capitalJSON)}, {"net_result", resultJSON(l.Gross.NetResult)}}},
+	}...))
 }
 
 // FittedJSON writes the answer of fit.
 func FittedJSON(w io.Writer, f study.Fitted) error {
-	o := head(f.Head)
-	curves := make([]object, len(f.Curves))
-	for i, c := range f.Curves {
-		candidates := make([]object, len(c.Candidates))
-		for k, fit := range c.Candidates {
-			candidates[k] = fitJSON(fit)
-		}
-		curves[i] = object{
-			"name": c.Curve.Name, "distortion": c.Curve.Distortion.String(), "brokerage": number(c.Curve.Brokerage),
-			"minimum_rate_on_line": number(c.Curve.MinimumRateOnLine), "candidates": candidates,
-		}
-		if c.Chosen != nil {
-			curves[i]["chosen"] = fitJSON(c.Chosen)
-		}
+	return write(w, append(head(f.Head), field{"curves", objects(f.Curves, curveJSON)}))
+}
+
+func curveJSON(c study.CurveFit) object {
+	o := object{
+		{"name", c.Curve.Name}, {"distortion", c.Curve.Distortion.String()}, {"brokerage", number(c.Curve.Brokerage)},
+		{"minimum_rate_on_line", number(c.Curve.MinimumRateOnLine)},
 	}
-	o["curves"] = curves
-	return write(w, o)
+	if c.Chosen != nil {
+		o = append(o, field{"chosen", fitJSON(c.Chosen)})
+	}
+	return append(o, field{"candidates", objects(c.Candidates, fitJSON)})
 }
 
 func fitJSON(f *market.Fit) object {
-	quotes := make([]object, len(f.Quotes))
-	for i, q := range f.Quotes {
-		quotes[i] = object{
-			"name": q.Name, "rate_on_line": number(q.RateOnLine), "fitted": number(q.Fitted), "residual": number(q.Residual), "left_out": number(q.LeftOut),
-			"attachment_probability": number(q.Attachment), "exhaustion_probability": number(q.Exhaustion), "multiple": number(q.Multiple), "weight": number(q.Weight),
-		}
-	}
-	o := object{
-		"family": f.Family, "distortion": f.Distortion.String(), "objective": number(f.Objective), "in_sample_error": number(f.InSample),
-		"leave_one_out_error": number(f.LeaveOneOut), "quotes": quotes, "warnings": list(f.Warnings),
-	}
+	o := object{{"family", f.Family}, {"distortion", f.Distortion.String()}}
 	if m, ok := f.Distortion.(market.Mixture); ok {
-		knots := make([]object, len(m.Knots))
-		for i, k := range m.Knots {
-			knots[i] = object{"probability": k.Tail, "weight": k.Weight}
-		}
-		o["supremum"], o["kinks"], o["pull"], o["pulled_towards"] = m.Supremum, knots, f.Pull, f.Toward
+		knots := objects(m.Knots, func(k market.Knot) object { return object{{"probability", number(k.Tail)}, {"weight", number(k.Weight)}} })
+		o = append(o, field{"supremum", number(m.Supremum)}, field{"kinks", knots}, field{"pull", number(f.Pull)}, field{"pulled_towards", f.Toward})
 	} else {
-		o["parameter"], o["standard_error"] = number(f.Parameter), number(f.StandardError)
+		o = append(o, field{"parameter", number(f.Parameter)}, field{"standard_error", number(f.StandardError)})
 	}
-	return o
-}
-
-func write(w io.Writer, o object) error {
-	e := json.NewEncoder(w)
-	e.SetIndent("", "  ")
-	e.SetEscapeHTML(false)
-	return e.Encode(o)
+	return append(o, object{
+		{"objective", number(f.Objective)}, {"in_sample_error", number(f.InSample)}, {"leave_one_out_error", number(f.LeaveOneOut)},
+		{"lowest_probability", number(f.LowestTail)}, {"highest_probability", number(f.HighestTail)}, {"warnings", texts(f.Warnings)},
+		{"quotes", objects(f.Quotes, func(q market.FittedQuote) object {
+			return object{
+				{"name", q.Name}, {"attachment_probability", number(q.Attachment)}, {"exhaustion_probability", number(q.Exhaustion)}, {"weight", number(q.Weight)},
+				{"rate_on_line", number(q.RateOnLine)}, {"fitted", number(q.Fitted)}, {"residual", number(q.Residual)}, {"left_out", number(q.LeftOut)},
+				{"multiple", number(q.Multiple)}, {"mark", quoteMark(f, q)},
+			}
+		})},
+	}...)
 }

@@ -9,125 +9,217 @@ import (
 
 	"cedewright/cmd/internal/study"
 	"cedewright/optimize"
+	"cedewright/portfolio/treaty"
 )
 
 //go:embed paper.html
 var paperText string
 
-var paper = template.Must(template.New("paper").Parse(paperText))
+var paper = template.Must(template.New("paper").Funcs(template.FuncMap{
+	"figure": func(cell string) string { figure, _ := split(cell); return figure },
+	"error":  func(cell string) string { _, err := split(cell); return strings.TrimSpace(err) },
+	"inc":    func(i int) int { return i + 1 },
+}).Parse(paperText))
 
-// Colours, chosen apart in lightness as well as in hue; every mark has a shape or a text of its own too.
-const (
-	lightColours = "--ink:#1d2733;--soft:#5b6b7a;--line:#d9e0e6;--page:#ffffff;--panel:#f4f6f8;--main:#0b6e75;--warm:#b4531a;--pale:#b9d7da;--quiet:#7a8894;"
-	darkColours  = "--ink:#e6ebef;--soft:#a3b0bc;--line:#3a4650;--page:#14191e;--panel:#1d242b;--main:#5cc3ca;--warm:#f0a06a;--pale:#2c5a5e;--quiet:#8d9aa6;"
-)
+// Setting is one effective setting of a run and where its value came from.
+type Setting struct{ Name, Value, Origin string }
 
-// pictureStyle colours the marks of every picture.
-const pictureStyle = `.grid{stroke:var(--line);stroke-width:1}.tick{fill:var(--soft);font-size:12px}.axis{fill:var(--soft);font-size:13px}
-.label{fill:var(--ink);font-size:13px;paint-order:stroke;stroke:var(--page);stroke-width:4px;stroke-linejoin:round}.leader{stroke:var(--quiet);stroke-width:1}.period{fill:var(--soft);font-size:11px}.period-mark{stroke:var(--quiet);stroke-width:1.5}
-polyline{fill:none;stroke-width:2}.front{stroke:var(--main)}.front-point{fill:var(--main)}.own{stroke:var(--warm);stroke-dasharray:6 5}
-.diagonal{stroke:var(--quiet);stroke-dasharray:2 4}.gross{stroke:var(--quiet);stroke-dasharray:7 4}.start-line{stroke:var(--warm);stroke-dasharray:2 3}.best-line{stroke:var(--main)}
-.best{fill:var(--main)}.none{fill:none;stroke:var(--ink);stroke-width:2}.start{fill:var(--warm)}.other{fill:var(--quiet)}
-.quote{fill:var(--warm)}.span{stroke:var(--warm);stroke-width:1.5;opacity:.6}
-.block{fill:var(--pale);stroke:var(--main);stroke-width:1.5}.unplaced{fill:none;stroke:var(--quiet);stroke-dasharray:3 3}`
+// tile is a figure worth a large type.
+type tile struct{ Name, Value, Beside string }
 
-// paperTable is a table of text.
-type paperTable struct {
-	Title string
+// paperGroup is rows of a table under a name.
+type paperGroup struct {
+	Name string
+	Rows []paperRow
+}
+
+type paperRow struct {
+	Name  string
+	Cells []string
+	Total bool
+}
+
+// treatyList is the treaties of a programme, each with its terms below its figures.
+type treatyList struct {
+	Name  string
 	Head  []string
-	Rows  [][]string // an empty row is a rule
+	Rows  [][]string
+	Terms []string
+}
+
+// curveSection is what is said about one market curve.
+type curveSection struct {
+	Name, Words, Note  string
+	Picture            template.HTML
+	Quotes, Candidates textTable
 }
 
 // paperView is what the template fills in.
 type paperView struct {
-	Title, Subtitle, Recommendation string
-	Style                           template.CSS
-	Figures                         paperTable
-	Towers, Frontier, Exceedance    template.HTML
-	Curves                          []template.HTML
-	Treaties                        []paperTable
-	FrontierTable                   paperTable
-	Keep                            []string
-	Warnings, Notes, LeftOut        []string
-	Caution                         string
-	Run                             [][2]string
-	Inputs                          []study.Input
+	Title, Subtitle, Recommendation, Interrupted string
+	Style                                        template.CSS
+	Tiles                                        []tile
+	Programmes                                   []string
+	Best                                         int // column of the best
+	Groups                                       []paperGroup
+	Towers, Frontier, Exceedance, Capital        template.HTML
+	QuotaShares                                  []string
+	Treaties                                     []treatyList
+	FrontierTable                                textTable
+	FrontierCount                                string
+	Curves                                       []curveSection
+	Keep, Warnings, Notes, LeftOut               []string
+	Caution                                      string
+	Run                                          [][2]string
+	Settings                                     []Setting
+	Inputs                                       []study.Input
 }
 
-// Paper writes the result of a search as one self-contained HTML page.
-func Paper(w io.Writer, s study.Searched) error {
-	columns := []optimize.Appraisal{s.NoCover}
-	towers := []optimize.Appraisal{}
-	if s.Start.Programme.Name != s.NoCover.Programme.Name {
-		columns, towers = append(columns, s.Start), append(towers, s.Start)
+// Paper writes the result of a search as one self-contained HTML page, for the screen and for A4. run lists the settings that bear on it.
+func Paper(w io.Writer, s study.Searched, run []Setting) error {
+	named := shownProgrammes(s)
+	towers := []optimize.Appraisal{s.Start, s.Result.Best}
+	scales := s.Scales
+	if s.Start.Programme.Name == s.NoCover.Programme.Name {
+		towers, scales = towers[1:], scales[min(1, len(scales)):]
 	}
-	columns, towers = append(columns, s.Result.Best), append(towers, s.Result.Best)
 	v := paperView{
-		Title: s.Title, Subtitle: fmt.Sprintf("%s a year unless said otherwise, %s simulated years", s.Currency, thousands(s.Years)),
-		Recommendation: Recommendation(s),
-		// All of these are built by this package from escaped parts.
-		Style:      template.CSS(":root{" + lightColours + "}@media (prefers-color-scheme:dark){:root{" + darkColours + "}}@media print{:root{" + lightColours + "}}" + pictureStyle),
-		Towers:     template.HTML(towersPicture(s.Currency, s.Scales, towers...)),
+		Title: clean(s.Title), Subtitle: fmt.Sprintf("Renewal of reinsurance: the programme to buy. All money in %s; %s.", clean(s.Currency), count(s.Years, "simulated year", "simulated years")),
+		Recommendation: unbroken(Recommendation(s)), Tiles: tiles(s), Best: len(named),
+		// These are built by this package from escaped parts.
+		Style:      template.CSS(colours(":root") + pictureStyle),
+		Towers:     template.HTML(towersPicture(s.Currency, scales, towers...)),
 		Frontier:   template.HTML(frontierPicture(s)),
 		Exceedance: template.HTML(exceedancePicture(s)),
-		Figures:    sideBySide(s.Appraised, columns),
-		Keep:       keepWords(s.Keep), Warnings: s.Warnings, Notes: s.Notes, LeftOut: leftOut, Caution: Caution, Inputs: s.Inputs,
-		FrontierTable: frontierTable(s),
+		Capital:    template.HTML(capitalPicture(s)),
+
+		FrontierTable: frontierTable(s), FrontierCount: count(len(s.Result.Frontier), "programme", "programmes"),
+		QuotaShares: quotaShares(towers),
+		Keep:        keepWords(s.Keep), Warnings: s.Warnings, Notes: s.Notes, LeftOut: leftOut, Caution: Caution, Inputs: s.Inputs, Settings: run,
+	}
+	if s.Result.Status == optimize.Interrupted {
+		v.Interrupted = "The search was interrupted. What follows is the best that it had found until then."
+	}
+	for _, p := range named {
+		v.Programmes = append(v.Programmes, clean(p.Programme.Name))
+	}
+	for _, g := range figureGroups(s.Appraised, named) {
+		group := paperGroup{Name: clean(g.name)}
+		for _, r := range g.rows {
+			group.Rows = append(group.Rows, paperRow{clean(r.name), r.cells, r.total})
+		}
+		v.Groups = append(v.Groups, group)
 	}
 	for _, c := range s.Curves {
-		v.Curves = append(v.Curves, template.HTML(curvePicture(c)))
+		v.Curves = append(v.Curves, curveOf(c))
 	}
-	for _, p := range towers {
-		v.Treaties = append(v.Treaties, treatyTable(p))
-	}
-	polished := ""
-	if s.Result.Polished {
-		polished = "; no single move on the steps improves the best"
+	for k := len(towers) - 1; k >= 0; k-- {
+		v.Treaties = append(v.Treaties, treatiesOf(towers[k]))
 	}
 	v.Run = [][2]string{
-		{"search", fmt.Sprintf("%s; %s programmes appraised, %d generations, %s%s", s.Space, thousands(s.Result.Evaluations), s.Result.Generations, s.Result.Status, polished)},
-		{"seeds", fmt.Sprintf("book %d, search %d", s.Head.Seed, s.Result.Seed)},
-		{"capital", fmt.Sprintf("cost of capital %s a year, first standard %s", Percent(s.CostOfCapital), s.NoCover.Capital[0].Standard)},
-		{"program", Version()},
+		{"Search", strings.TrimPrefix(searchWords(s), "Searched: ")},
+		{"Seeds", fmt.Sprintf("book %d, search %d", s.Head.Seed, s.Result.Seed)},
+		{"Cost of capital", fmt.Sprintf("%s a year on required capital under “%s”, which drives the search", Percent(s.CostOfCapital), clean(s.NoCover.Capital[0].Standard))},
+		{"Program", Version()},
 	}
 	return paper.Execute(w, v)
 }
 
-func sideBySide(a study.Appraised, columns []optimize.Appraisal) paperTable {
-	t := paperTable{Head: []string{"figure"}, Rows: figureRows(a, columns)}
-	for _, p := range columns {
-		t.Head = append(t.Head, p.Programme.Name)
-	}
-	return t
+// unbroken keeps a figure, its unit and its error on one line.
+func unbroken(text string) string {
+	return strings.NewReplacer(" ± ", "\u00a0±\u00a0", " %", "\u00a0%").Replace(text)
 }
 
-func treatyTable(p optimize.Appraisal) paperTable {
-	t := paperTable{Title: p.Programme.Name, Head: treatyHead}
+// tiles picks the four figures on which a decision turns.
+func tiles(s study.Searched) []tile {
+	best, start := s.Result.Best, s.Start
+	against := func(figure string) string {
+		if start.Programme.Name == s.NoCover.Programme.Name {
+			return ""
+		}
+		return fmt.Sprintf("%s with “%s”", figure, start.Programme.Name)
+	}
+	cost := tile{"Total cost a year", Estimated(best.TotalCost), against(Estimated(start.TotalCost))}
+	if d, ok := difference(s.Appraised, best.Programme.Name); ok {
+		cost.Beside = fmt.Sprintf("%s against “%s”", Estimated(d.TotalCost), d.Against)
+	}
+	list := []tile{
+		cost,
+		{"Capital freed", Estimated(best.Capital[0].Relief), against(Estimated(start.Capital[0].Relief))},
+		{"Margin given a year", Estimated(best.CededMargin), against(Estimated(start.CededMargin))},
+		{"Rent of that capital", rent(best), fmt.Sprintf("own capital costs %s", Percent(s.CostOfCapital))},
+	}
+	for i := range list {
+		list[i].Beside = unbroken(clean(list[i].Beside))
+	}
+	return list
+}
+
+// quotaShares tells the quota shares of programmes, which no picture of layers shows.
+func quotaShares(all []optimize.Appraisal) []string {
+	var list []string
+	for _, a := range all {
+		var shares []string
+		for _, f := range a.Treaties {
+			if t := f.Terms; t.Kind == treaty.QuotaShare && t.Placed() > 0 {
+				shares = append(shares, fmt.Sprintf("%s of %s (%s)", percentOf(t.Cession), subject(t), t.Name))
+			}
+		}
+		if len(shares) > 0 {
+			list = append(list, clean(a.Programme.Name+": "+joined(shares)))
+		}
+	}
+	return list
+}
+
+func treatiesOf(p optimize.Appraisal) treatyList {
+	t := treatyList{Name: clean(p.Programme.Name), Head: treatyHead}
+	u := unitOfTreaties(p)
 	for _, f := range p.Treaties {
-		t.Rows = append(t.Rows, treatyCells(f))
+		t.Rows, t.Terms = append(t.Rows, treatyCells(f, u)), append(t.Terms, termsOf(f))
 	}
 	return t
 }
 
-func frontierTable(s study.Searched) paperTable {
-	t := paperTable{Head: []string{"treaties", "relief", "ceded margin", "total cost", "rent", "ceded premium"}}
-	for _, p := range s.Result.Frontier {
-		var names []string
-		for _, f := range p.Treaties {
-			names = append(names, f.Terms.Describe(Money))
+func curveOf(c study.CurveFit) curveSection {
+	section := curveSection{Name: clean(c.Curve.Name), Words: clean(sentence(curveWords(c))), Picture: template.HTML(curvePicture(c)),
+		Note: "Set by hand in the study; no quote stands behind it."}
+	if c.Chosen != nil {
+		section.Quotes, section.Candidates, section.Note = quoteTable(c.Chosen), candidateTable(c), quoteWords(c.Chosen)
+	}
+	return section
+}
+
+func frontierTable(s study.Searched) textTable {
+	front := s.Result.Frontier
+	t := textTable{Head: append(append([]string{}, frontierHead...), "layers"), Remark: true}
+	u := unitOfProgrammes(front)
+	for _, i := range excerpt(len(front), frontierShown) {
+		var terms []string
+		for _, f := range front[i].Treaties {
+			terms = append(terms, briefly(f.Terms))
 		}
-		if len(names) == 0 {
-			names = []string{"none"}
-		}
-		t.Rows = append(t.Rows, []string{strings.Join(names, " · "), Estimated(p.Capital[0].Relief), Estimated(p.CededMargin), Estimated(p.TotalCost), rent(p), Estimated(p.CededPremium)})
+		t.Rows = append(t.Rows, append(frontierCells(front[i], u), clean(strings.Join(terms, "; "))))
 	}
 	return t
+}
+
+// briefly names a treaty by its money and share alone.
+func briefly(t treaty.Treaty) string {
+	if t.Kind == treaty.QuotaShare {
+		return t.Name + " " + percentOf(t.Cession)
+	}
+	text := Terms(t.Limit) + " xs " + Terms(t.Retention)
+	if t.Share < 1 {
+		text += " (" + percentOf(t.Share) + ")"
+	}
+	return text
 }
 
 // SearchFiles gives the files of a search beside result.json.
-func SearchFiles(s study.Searched) ([]File, error) {
+func SearchFiles(s study.Searched, run []Setting) []File {
 	return []File{
 		{Name: "frontier.csv", Write: func(w io.Writer) error { return FrontierCSV(w, s) }},
-		{Name: "report.html", Write: func(w io.Writer) error { return Paper(w, s) }},
-	}, nil
+		{Name: "report.html", Write: func(w io.Writer) error { return Paper(w, s, run) }},
+	}
 }

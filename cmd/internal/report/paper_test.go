@@ -58,7 +58,7 @@ func TestPaperIsWellFormed(t *testing.T) {
 	for _, n := range []int{0, 1, 2, 40} {
 		s := found(n, nasty)
 		var b bytes.Buffer
-		if err := Paper(&b, s); err != nil {
+		if err := Paper(&b, s, nil); err != nil {
 			t.Fatal(err)
 		}
 		if strings.Contains(b.String(), "<script") {
@@ -81,7 +81,7 @@ func TestPaperIsWellFormed(t *testing.T) {
 			}
 		}
 		var text bytes.Buffer
-		PrintSearched(&text, s)
+		PrintSearched(&text, s, Style{})
 		for _, want := range []string{"Buy “best found”", "a difference of −6.0m ± 0.3m", Caution[:40]} {
 			if !strings.Contains(text.String(), want) {
 				t.Errorf("the terminal does not say %q", want)
@@ -114,7 +114,7 @@ func TestFrontierCSV(t *testing.T) {
 func TestWriteFolder(t *testing.T) {
 	parent := t.TempDir()
 	folder := filepath.Join(parent, "run")
-	good := []File{{Name: marker, Write: func(w io.Writer) error { _, err := io.WriteString(w, "{}"); return err }}}
+	good := []File{{Name: marker, Write: func(w io.Writer) error { _, err := io.WriteString(w, `{"program":"cedewright"}`); return err }}}
 	if err := WriteFolder(folder, false, good); err != nil {
 		t.Fatal(err)
 	}
@@ -125,7 +125,7 @@ func TestWriteFolder(t *testing.T) {
 	if err := WriteFolder(folder, true, failing); err == nil || !strings.Contains(err.Error(), "disk full") {
 		t.Errorf("a failure while writing: %v", err)
 	}
-	if data, err := os.ReadFile(filepath.Join(folder, marker)); err != nil || string(data) != "{}" {
+	if data, err := os.ReadFile(filepath.Join(folder, marker)); err != nil || !strings.Contains(string(data), "cedewright") {
 		t.Errorf("the old results are gone: %v", err)
 	}
 	if entries, err := os.ReadDir(parent); err != nil || len(entries) != 1 {

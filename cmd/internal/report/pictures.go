@@ -10,145 +10,156 @@ import (
 	"cedewright/optimize"
 )
 
-// moneyAxis gives an axis from low to high with round ends, named with unit and currency.
-func moneyAxis(low, high float64, name, currency string) axis {
-	u := unitFor(max(math.Abs(low), math.Abs(high)))
-	words := map[string]string{"bn": "billion ", "m": "million ", "k": "thousand ", "": ""}
-	return axis{low: low, high: high, label: fmt.Sprintf("%s, %s%s", name, words[u.suffix], currency), format: func(x float64) string {
-		return significant(x/u.factor, 4)
-	}}
+// pictureWidth is the width of a picture as wide as the page.
+const pictureWidth = 860.0
+
+// look gives the class and the shape by which a programme is known in every picture.
+func look(s study.Searched, name string) (class, shape string) {
+	switch name {
+	case s.Result.Best.Programme.Name:
+		return "best", "diamond"
+	case s.NoCover.Programme.Name:
+		return "none", "circle"
+	case s.Start.Programme.Name:
+		return "start", "square"
+	}
+	return "other", "triangle"
 }
 
 // frontierPicture draws ceded margin against capital relief with the programmes in hand.
 func frontierPicture(s study.Searched) string {
-	front := s.Result.Frontier
-	right, top := 0.0, 0.0
-	shown := append([]optimize.Appraisal{s.Start, s.Result.Best}, front...)
-	for _, p := range s.Programmes {
-		shown = append(shown, p)
+	front, named := s.Result.Frontier, shownProgrammes(s)
+	left, right, bottom, top := 0.0, 0.0, 0.0, 0.0
+	for _, p := range append(append([]optimize.Appraisal{}, named...), front...) {
+		relief, margin := p.Capital[0].Relief, p.CededMargin
+		left, right = min(left, relief.Value-relief.StandardError), max(right, relief.Value+relief.StandardError)
+		bottom, top = min(bottom, margin.Value), max(top, margin.Value)
 	}
-	left := 0.0
-	for _, p := range shown {
-		right, top = max(right, p.Capital[0].Relief.Value), max(top, p.CededMargin.Value)
-		left = min(left, p.Capital[0].Relief.Value)
+	downTo := func(x float64) float64 {
+		if x < 0 {
+			return -upTo(-x)
+		}
+		return 0
 	}
-	if left < 0 {
-		left = -upTo(-left)
-	}
-	c := newChart(760, 420,
-		moneyAxis(left, upTo(right*1.02), "capital relief ("+s.NoCover.Capital[0].Standard+")", s.Currency),
-		moneyAxis(0, upTo(top*1.05), "ceded margin a year", s.Currency))
-	// Where a margin buys relief at just the cost of capital.
-	reach := min(c.x.high, c.y.high/max(s.CostOfCapital, 1e-12))
-	c.curve("own", []float64{0, reach}, []float64{0, reach * s.CostOfCapital})
+	c := newChart(pictureWidth, 430, usual,
+		moneyAxis(downTo(left), upTo(right*1.02), "capital relief ("+clean(s.NoCover.Capital[0].Standard)+")", s.Currency),
+		moneyAxis(downTo(bottom), upTo(top*1.08), "ceded margin a year", s.Currency))
+	ray := c.ownCapital(s.CostOfCapital)
 	var xs, ys []float64
 	for _, p := range front {
 		xs, ys = append(xs, p.Capital[0].Relief.Value), append(ys, p.CededMargin.Value)
 	}
-	if len(xs) > 0 {
+	if len(xs) > 1 {
 		c.curve("front", xs, ys)
 	}
 	for _, p := range front {
 		c.mark("front-point", "dot", p.Capital[0].Relief.Value, p.CededMargin.Value,
-			fmt.Sprintf("%s: relief %s, margin %s", p.Programme.Name, Estimated(p.Capital[0].Relief), Estimated(p.CededMargin)))
+			fmt.Sprintf("%s: relief %s, margin %s, rent %s", count(len(p.Treaties), "treaty", "treaties"), Estimated(p.Capital[0].Relief), Estimated(p.CededMargin), rent(p)))
 	}
 	var labels []label
-	for _, p := range s.Programmes {
-		class, shape := "other", "triangle"
-		switch p.Programme.Name {
-		case s.Result.Best.Programme.Name:
-			class, shape = "best", "diamond"
-		case s.NoCover.Programme.Name:
-			class, shape = "none", "circle"
-		case s.Start.Programme.Name:
-			class, shape = "start", "square"
-		}
-		x, y := p.Capital[0].Relief.Value, p.CededMargin.Value
-		c.mark(class, shape, x, y, fmt.Sprintf("%s: relief %s, margin %s", p.Programme.Name, Estimated(p.Capital[0].Relief), Estimated(p.CededMargin)))
-		labels = append(labels, label{c.x.at(x), c.y.at(y), p.Programme.Name})
+	for i := len(named) - 1; i >= 0; i-- {
+		p := named[i]
+		class, shape := look(s, p.Programme.Name)
+		x, y := p.Capital[0].Relief, p.CededMargin
+		c.whiskers("whisker", x.Value, y.Value, x.StandardError, y.StandardError)
+		c.mark(class, shape, x.Value, y.Value, fmt.Sprintf("%s: relief %s, margin %s, rent %s", p.Programme.Name, Estimated(x), Estimated(y), rent(p)))
+		labels = append(labels, label{x: c.x.at(x.Value), y: c.y.at(y.Value), text: p.Programme.Name, class: "strong"})
 	}
-	labels = append(labels, label{c.x.at(reach * 0.93), c.y.at(reach * 0.93 * s.CostOfCapital), "own cost of capital " + Percent(s.CostOfCapital)})
-	c.labels(labels)
+	if len(front) > 2 {
+		k := len(front) * 9 / 10
+		labels = append(labels, label{x: c.x.at(xs[k]), y: c.y.at(ys[k]), text: "frontier", class: "main-text"})
+	}
+	c.labels(append(labels, ray...))
 	return c.svg("Least ceded margin for each capital relief",
-		fmt.Sprintf("%d programmes, from no relief to %s; below the dashed line relief costs less than own capital", len(front), Money(right)))
+		fmt.Sprintf("%s on the frontier; the best found frees %s for a margin of %s a year. Below the dashed line relief costs less than own capital.",
+			count(len(front), "programme", "programmes"), Estimated(s.Result.Best.Capital[0].Relief), Estimated(s.Result.Best.CededMargin)))
 }
 
-// curvePicture draws a market curve on probability scales with its quotes.
-func curvePicture(f study.CurveFit) string {
-	low := 0.001
-	if f.Chosen != nil {
-		for low > f.Chosen.LowestTail && low > 1e-5 {
-			low /= 2
-		}
+// ownCapital shades where relief costs less than the cost of own capital and draws the border; it gives the border's label.
+func (c *chart) ownCapital(cost float64) []label {
+	if !(cost > 0) {
+		return nil
 	}
-	percent := func(x float64) string { return Percent(x) }
-	c := newChart(760, 400,
-		axis{low: low, high: 1, scale: logarithmic, label: "yearly probability that the layer is hit", format: percent},
-		axis{low: low, high: 1, scale: logarithmic, label: "price over limit, after brokerage", format: percent})
-	c.curve("diagonal", []float64{low, 1}, []float64{low, 1})
-	var xs, ys []float64
-	for i := range 201 {
-		s := low * math.Pow(1/low, float64(i)/200)
-		xs, ys = append(xs, s), append(ys, f.Curve.Distortion.At(s))
-	}
-	c.curve("front", xs, ys)
-	if f.Chosen != nil {
-		for _, q := range f.Chosen.Quotes {
-			price := q.RateOnLine * (1 - f.Curve.Brokerage)
-			title := fmt.Sprintf("%s: quoted %s, fitted %s", q.Name, Percent(q.RateOnLine), Percent(q.Fitted))
-			c.line("span", c.x.at(max(q.Exhaustion, low)), c.y.at(price), c.x.at(q.Attachment), c.y.at(price))
-			middle := math.Sqrt(max(q.Exhaustion, low) * q.Attachment)
-			c.mark("quote", "diamond", middle, price, title)
-		}
-	}
-	c.labels([]label{{c.x.at(0.3), c.y.at(0.3), "expected loss"}, {c.x.at(0.02), c.y.at(f.Curve.Distortion.At(0.02)), f.Curve.Name + ": " + f.Curve.Distortion.String()}})
-	return c.svg("Market curve "+f.Curve.Name+" and its quotes",
-		"Price of a thin layer by its probability; each quote spans from its exhaustion to its attachment probability")
+	reach := min(c.x.high, c.y.high/cost)
+	xs, ys := []float64{0, reach, c.x.high, c.x.high}, []float64{0, reach * cost, min(c.x.high*cost, c.y.high), 0}
+	c.area("cheap", xs, ys)
+	c.curve("own", xs[:2], ys[:2])
+	return []label{{x: c.x.at(reach * 0.8), y: c.y.at(reach * 0.8 * cost), text: "own capital costs " + Percent(cost) + " a year", class: "warm-text"}}
 }
 
 // exceedancePicture draws the annual loss at return periods, gross and net of recoveries.
 func exceedancePicture(s study.Searched) string {
 	e := s.Curve
-	top := e.Gross[len(e.Gross)-1]
-	bottom := e.Gross[0]
-	for _, net := range e.Net {
-		bottom = min(bottom, net[0])
+	if len(e.ReturnPeriods) == 0 || len(e.Gross) != len(e.ReturnPeriods) {
+		return ""
 	}
-	y := moneyAxis(0, upTo(top), "loss of a year", s.Currency)
-	if bottom > top/3 {
-		step := niceStep(top / 5)
-		y.low = math.Floor(bottom/step) * step
-		if y.low == bottom {
-			y.low -= step
-		}
-	}
-	c := newChart(760, 380,
-		axis{low: e.ReturnPeriods[0], high: e.ReturnPeriods[len(e.ReturnPeriods)-1], scale: logarithmic, label: "return period, years", format: func(x float64) string { return significant(x, 4) }}, y)
 	last := len(e.ReturnPeriods) - 1
-	c.curve("gross", e.ReturnPeriods, e.Gross)
-	at := func(ys []float64, k int) label {
-		return label{c.x.at(e.ReturnPeriods[last-k]), c.y.at(ys[last-k]), ""}
+	top, bottom := e.Gross[last], e.Gross[0]
+	for _, net := range e.Net {
+		top, bottom = max(top, net[last]), min(bottom, net[0])
 	}
-	l := at(e.Gross, 1)
-	l.text = "gross"
-	labels := []label{l}
+	y := moneyAxis(min(0, bottom), upTo(top*1.02), "loss of a year", s.Currency)
+	if step := niceStep(top / 5); bottom > top/3 {
+		y.low = math.Floor(bottom/step-0.2) * step
+	}
+	c := newChart(pictureWidth, 380, frame{left: 66, right: 140, top: 14, bottom: 50},
+		axis{low: e.ReturnPeriods[0], high: e.ReturnPeriods[last], scale: logarithmic, label: "exceeded once in so many years", format: func(x float64) string { return significant(x, 4) }}, y)
+	c.curve("gross", e.ReturnPeriods, e.Gross)
+	labels := []label{{x: c.x.to, y: c.y.at(e.Gross[last]), text: "gross"}}
 	for i, net := range e.Net {
-		class := "start-line"
+		class, text := "start-line", "warm-text"
 		if i == len(e.Net)-1 {
-			class = "best-line"
+			class, text = "best-line", "main-text"
 		}
 		c.curve(class, e.ReturnPeriods, net)
-		l := at(net, 1)
-		l.text = "net, " + e.Programmes[i]
-		labels = append(labels, l)
+		labels = append(labels, label{x: c.x.to, y: c.y.at(net[last]), text: shortened("net, "+e.Programmes[i], 126, labelSize), class: text})
 	}
 	c.labels(labels)
-	return c.svg("Loss of a year, gross and net of recoveries",
-		"Premiums are left out; the net loss is what stays after the recoveries of the programme")
+	return c.svg("Loss of a year at return periods, gross and net of recoveries",
+		fmt.Sprintf("Once in %v years the gross loss exceeds %s. Premiums are left out.", e.ReturnPeriods[last], Money(e.Gross[last])))
+}
+
+// capitalPicture draws required capital by standard and programme, with own funds for comparison.
+func capitalPicture(s study.Searched) string {
+	named := shownProgrammes(s)
+	top := s.OwnFunds
+	for _, p := range named {
+		for _, f := range p.Capital {
+			top = max(top, f.Net.Value+f.Net.StandardError)
+		}
+	}
+	const bar, group = 22.0, 34.0
+	standards := named[0].Capital
+	height := float64(len(standards))*(group+bar*float64(len(named))) + 66
+	c := newChart(pictureWidth, height, frame{left: 150, right: 110, top: 12, bottom: 50}, moneyAxis(0, upTo(top*1.02), "required capital", s.Currency), axis{})
+	if s.OwnFunds > 0 {
+		c.line("own", c.x.at(s.OwnFunds), c.y.from, c.x.at(s.OwnFunds), c.y.to)
+		c.text("note warm-text", c.x.at(s.OwnFunds)+6, c.y.to+12, "start", "own funds "+Money(s.OwnFunds))
+	}
+	u := unitOfProgrammes(named)
+	y := c.y.to
+	for i, standard := range standards {
+		c.text("label strong", c.x.from, y+20, "start", "standard “"+shortened(standard.Standard, 400, labelSize)+"”")
+		y += group - 6
+		for _, p := range named {
+			class, _ := look(s, p.Programme.Name)
+			net := p.Capital[i].Net
+			c.text("tick", c.x.from-10, y+14, "end", shortened(p.Programme.Name, c.x.from-14, tickSize))
+			c.rectangle("bar-"+class, c.x.from, y+3, c.x.at(net.Value)-c.x.from, bar-7)
+			if known(net) {
+				middle := y + 3 + (bar-7)/2
+				c.line("whisker", c.x.at(net.Value-net.StandardError), middle, c.x.at(net.Value+net.StandardError), middle)
+			}
+			c.text("note", c.x.at(net.Value+max(net.StandardError, 0))+7, y+14, "start", u.estimate(net))
+			y += bar
+		}
+		y += 6
+	}
+	return c.svg("Required capital by standard", fmt.Sprintf("Bars for %s under %s, one standard error to each side.", count(len(named), "programme", "programmes"), count(len(standards), "standard", "standards")))
 }
 
 // CurvePictures gives a file for the picture of each curve.
-func CurvePictures(curves []study.CurveFit) ([]File, error) {
+func CurvePictures(curves []study.CurveFit) []File {
 	var files []File
 	for i, f := range curves {
 		picture := standalone(curvePicture(f))
@@ -157,21 +168,16 @@ func CurvePictures(curves []study.CurveFit) ([]File, error) {
 			return err
 		}})
 	}
-	return files, nil
+	return files
 }
 
-// fileName keeps letters and digits of a name.
+// fileName keeps letters and digits of a name, at most 60 of them.
 func fileName(name string) string {
-	return strings.Map(func(r rune) rune {
+	kept := strings.Map(func(r rune) rune {
 		if r >= 'a' && r <= 'z' || r >= 'A' && r <= 'Z' || r >= '0' && r <= '9' {
 			return r
 		}
 		return '-'
 	}, name)
-}
-
-// standalone puts the style into a picture that leaves the paper.
-func standalone(svg string) string {
-	i := strings.Index(svg, "<title>")
-	return svg[:i] + "<style>svg{background:#fff;font-family:system-ui,sans-serif;" + lightColours + "}" + pictureStyle + "</style>" + svg[i:] + "\n"
+	return kept[:min(len(kept), 60)]
 }

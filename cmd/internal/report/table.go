@@ -4,78 +4,201 @@ import (
 	"fmt"
 	"io"
 	"strings"
-	"unicode/utf8"
+
+	"github.com/mattn/go-runewidth"
 )
 
-// grid is a table of text: the first column reads left, all others are figures and stand right.
+// Style says how text is laid out on a terminal.
+type Style struct {
+	Width  int  // letters in a line; 0 = 112
+	Colour bool // bold and dim type; without it the text is plain
+}
+
+const (
+	defaultWidth = 112
+	leastWidth   = 60 // a narrower terminal gets lines of this width
+	mostWidth    = 140
+)
+
+func (s Style) width() int {
+	if s.Width <= 0 {
+		return defaultWidth
+	}
+	return min(max(s.Width, leastWidth), mostWidth)
+}
+
+// widths measures text the same on every machine, whatever its language is set to.
+var widths = &runewidth.Condition{StrictEmojiNeutral: true}
+
+// columns gives how many columns of a terminal a text fills.
+func columns(text string) int { return widths.StringWidth(text) }
+
+// emphasis is a way to set type apart: an escape sequence of ECMA-48.
+type emphasis string
+
+const (
+	plainType emphasis = ""
+	bold      emphasis = "\x1b[1m"
+	dim       emphasis = "\x1b[2m"
+	warm      emphasis = "\x1b[33m"
+)
+
+// in sets text apart if the style has colour.
+func (s Style) in(e emphasis, text string) string {
+	if !s.Colour || e == plainType || text == "" {
+		return text
+	}
+	return string(e) + text + "\x1b[0m"
+}
+
+// grid is a table of text: the first column reads left, all others are figures, stand right and have their errors aligned.
 type grid struct {
 	title string
 	head  []string
-	rows  [][]string
+	rows  []gridRow
 	left  map[int]bool // further columns that read left
+	best  int          // column set in bold; 0 = none
+}
+
+// gridRow is a row of cells, or a rule with a name when it has none.
+type gridRow struct {
+	cells []string
+	name  string
+	total bool // set in bold
 }
 
 func newGrid(title string, head ...string) *grid {
 	return &grid{title: title, head: head, left: map[int]bool{0: true}}
 }
 
-func (g *grid) add(cells ...string) { g.rows = append(g.rows, cells) }
+func (g *grid) add(cells ...string) { g.rows = append(g.rows, gridRow{cells: cells}) }
 
 // rule adds a line across.
-func (g *grid) rule() { g.rows = append(g.rows, nil) }
+func (g *grid) rule() { g.rows = append(g.rows, gridRow{}) }
 
-// print writes the table. Columns keep to the width of their widest cell; nothing is cut off.
-func (g *grid) print(w io.Writer) {
-	widths := make([]int, len(g.head))
-	for _, row := range append([][]string{g.head}, g.rows...) {
-		for i, cell := range row {
-			widths[i] = max(widths[i], utf8.RuneCountInString(cell))
-		}
+// split cuts "12.3m ± 0.4m" before the blank that leads the error.
+func split(cell string) (figure, err string) {
+	if i := strings.Index(cell, plusMinus); i >= 0 {
+		return cell[:i], cell[i:]
 	}
-	total := 2*len(widths) - 2
-	for _, width := range widths {
-		total += width
-	}
-	if g.title != "" {
-		fmt.Fprintln(w, g.title)
-	}
-	line := func(cells []string) {
-		var b strings.Builder
-		for i, cell := range cells {
-			pad := strings.Repeat(" ", widths[i]-utf8.RuneCountInString(cell))
-			if i > 0 {
-				b.WriteString("  ")
-			}
-			if g.left[i] {
-				b.WriteString(cell + pad)
-			} else {
-				b.WriteString(pad + cell)
-			}
-		}
-		fmt.Fprintln(w, strings.TrimRight(b.String(), " "))
-	}
-	line(g.head)
-	fmt.Fprintln(w, strings.Repeat("─", total))
+	return cell, ""
+}
+
+// columnRoom is the room that a column needs.
+type columnRoom struct{ whole, figure, err int }
+
+func (g *grid) room(i int) columnRoom {
+	var r columnRoom
 	for _, row := range g.rows {
-		if row == nil {
-			fmt.Fprintln(w, strings.Repeat("─", total))
+		if i >= len(row.cells) {
 			continue
 		}
-		line(row)
+		if g.left[i] {
+			r.whole = max(r.whole, columns(row.cells[i]))
+			continue
+		}
+		figure, err := split(row.cells[i])
+		r.figure, r.err = max(r.figure, columns(figure)), max(r.err, columns(err))
+	}
+	r.whole = max(r.whole, r.figure+r.err, columns(g.head[i]))
+	return r
+}
+
+// cell lays out one cell; the errors of a column stand below each other.
+func (g *grid) cell(i int, r columnRoom, text string, head bool) string {
+	if g.left[i] {
+		return text + strings.Repeat(" ", r.whole-columns(text))
+	}
+	after := 0
+	if !head {
+		_, err := split(text)
+		after = r.err - columns(err)
+	}
+	before := r.whole - columns(text) - after
+	if before < 0 { // a head wider than its figures never is; a text as wide as figure and error stands without room behind it
+		before, after = r.whole-columns(text), 0
+	}
+	return strings.Repeat(" ", before) + text + strings.Repeat(" ", after)
+}
+
+// print writes the table. Columns keep to the width of their widest cell and nothing is cut off; what does not fit beside each other is
+// written in parts below each other, each with the first column.
+func (g *grid) print(w io.Writer, s Style) {
+	for i := range g.head {
+		g.head[i] = clean(g.head[i])
+	}
+	for _, row := range g.rows {
+		for i := range row.cells {
+			row.cells[i] = clean(row.cells[i])
+		}
+	}
+	rooms := make([]columnRoom, len(g.head))
+	for i := range g.head {
+		rooms[i] = g.room(i)
+	}
+	title := g.title
+	for from := 1; from == 1 || from < len(g.head); {
+		part, total := []int{0}, rooms[0].whole
+		for ; from < len(g.head) && (len(part) == 1 || total+2+rooms[from].whole <= s.width()); from++ {
+			part, total = append(part, from), total+2+rooms[from].whole
+		}
+		if len(g.head) == 1 {
+			from = 2
+		}
+		if title != "" {
+			fmt.Fprintln(w, s.in(bold, title))
+			title += " (continued)"
+		}
+		g.printPart(w, s, part, rooms, total)
+	}
+}
+
+func (g *grid) printPart(w io.Writer, s Style, part []int, rooms []columnRoom, total int) {
+	line := func(cells []string, head, heavy bool) {
+		parts := make([]string, len(part))
+		for k, i := range part {
+			text := ""
+			if i < len(cells) {
+				text = cells[i]
+			}
+			parts[k] = g.cell(i, rooms[i], text, head)
+			if k == len(part)-1 {
+				parts[k] = strings.TrimRight(parts[k], " ")
+			}
+			if heavy || head || (i == g.best && i > 0) {
+				parts[k] = s.in(bold, parts[k])
+			}
+		}
+		fmt.Fprintln(w, strings.TrimRight(strings.Join(parts, "  "), " "))
+	}
+	line(g.head, true, false)
+	fmt.Fprintln(w, s.in(dim, strings.Repeat("─", total)))
+	for i, row := range g.rows {
+		switch {
+		case row.cells != nil:
+			line(row.cells, false, row.total)
+		case row.name == "":
+			fmt.Fprintln(w, s.in(dim, strings.Repeat("─", total)))
+		default:
+			if i > 0 {
+				fmt.Fprintln(w)
+			}
+			fmt.Fprintln(w, s.in(dim, row.name))
+		}
 	}
 	fmt.Fprintln(w)
 }
 
-// wrapped writes text in lines of at most width letters, later lines indented.
+// wrapped writes text in lines that fit, later lines indented.
 func wrapped(w io.Writer, text, indent string, width int) {
 	length := 0
-	for i, word := range strings.Fields(text) {
-		n := utf8.RuneCountInString(word)
+	for i, word := range strings.Fields(clean(text)) {
+		n := columns(word)
 		switch {
 		case i == 0:
 		case length+1+n > width:
 			fmt.Fprint(w, "\n"+indent)
-			length = len(indent)
+			length = columns(indent)
 		default:
 			fmt.Fprint(w, " ")
 			length++
@@ -86,10 +209,13 @@ func wrapped(w io.Writer, text, indent string, width int) {
 	fmt.Fprintln(w)
 }
 
-// textWidth is the width of running text on a terminal.
-const textWidth = 110
-
-func bullet(w io.Writer, text string) {
+func bullet(w io.Writer, s Style, text string) {
 	fmt.Fprint(w, "  • ")
-	wrapped(w, text, "    ", textWidth-4)
+	wrapped(w, text, "    ", s.width()-4)
+}
+
+// mind writes a warning.
+func mind(w io.Writer, s Style, text string) {
+	fmt.Fprint(w, "  "+s.in(warm, "! "))
+	wrapped(w, text, "    ", s.width()-4)
 }

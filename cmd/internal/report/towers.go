@@ -2,8 +2,8 @@ package report
 
 import (
 	"fmt"
-	"html"
 	"math"
+	"slices"
 	"strings"
 
 	"cedewright/cmd/internal/study"
@@ -11,141 +11,205 @@ import (
 	"cedewright/portfolio/treaty"
 )
 
-// column is the treaties of a programme that answer the same thing, drawn one above the other.
-type column struct {
-	name     string
-	treaties []optimize.TreatyFigure
-	scale    []float64 // loss exceeded once in each of study.ReturnPeriods; nil = not known
+// panel is what programmes do about one subject: the layers of each, drawn side by side on one axis.
+type panel struct {
+	title    string
+	unit     string                    // what the money axis counts: "loss of one event"
+	scale    []float64                 // loss exceeded once in each of study.ReturnPeriods; nil = not known
+	treaties [][]optimize.TreatyFigure // by programme
 }
 
-// columnsOf groups treaties by kind and subject, in the order in which they stand.
-func columnsOf(a optimize.Appraisal, scales [][]float64) []column {
-	var list []column
+// panels groups the excess treaties of programmes by kind and subject, in the order in which they stand. scales gives the losses at return
+// periods by programme and treaty.
+func panels(all []optimize.Appraisal, scales [][][]float64) []panel {
+	var list []panel
 	index := map[string]int{}
-	for k, f := range a.Treaties {
-		t := f.Terms
-		if t.Placed() == 0 || t.Kind == treaty.QuotaShare || math.IsInf(t.Limit, 1) {
-			continue
-		}
-		what := t.Perils
-		if len(what) == 0 {
-			what = t.Classes
-		}
-		if len(what) == 0 {
-			what = []string{"all"}
-		}
-		unit := map[treaty.Kind]string{treaty.EventExcess: "per event", treaty.RiskExcess: "per risk", treaty.AggregateExcess: "per year"}[t.Kind]
-		name := strings.Join(what, ", ") + ", " + unit
-		key := name + "|" + strings.Join(t.Classes, ",")
-		i, ok := index[key]
-		if !ok {
-			i = len(list)
-			index[key] = i
-			list = append(list, column{name: name})
-			if k < len(scales) {
-				list[i].scale = scales[k]
+	for k, a := range all {
+		for i, f := range a.Treaties {
+			t := f.Terms
+			if t.Placed() == 0 || t.Kind == treaty.QuotaShare {
+				continue
+			}
+			key := t.Kind.String() + "\x00" + strings.Join(slices.Sorted(slices.Values(t.Classes)), "\x00") + "\x01" + strings.Join(slices.Sorted(slices.Values(t.Perils)), "\x00")
+			at, ok := index[key]
+			if !ok {
+				at = len(list)
+				index[key] = at
+				list = append(list, panel{title: subject(t), unit: unitWords(t.Kind), treaties: make([][]optimize.TreatyFigure, len(all))})
+			}
+			list[at].treaties[k] = append(list[at].treaties[k], f)
+			if k < len(scales) && i < len(scales[k]) && scales[k][i] != nil {
+				list[at].scale = scales[k][i]
 			}
 		}
-		list[i].treaties = append(list[i].treaties, f)
 	}
 	return list
 }
 
-// towersPicture draws the layers of programmes on one money axis, drawn by square root so that low layers can be seen beside high ones:
-// height is money, width is the share placed, beside each layer stand its terms and how often it is hit, and along each column the return periods
-// of its loss.
-func towersPicture(currency string, scales [][][]float64, all ...optimize.Appraisal) string {
+func unitWords(k treaty.Kind) string {
+	switch k {
+	case treaty.RiskExcess:
+		return "loss of one risk"
+	case treaty.AggregateExcess:
+		return "losses of one year"
+	}
+	return "loss of one event"
+}
+
+// top gives the highest money that the layers of a panel reach; an unlimited layer is drawn half as high again as it starts.
+func (p panel) top() float64 {
 	top := 0.0
-	for _, a := range all {
-		for _, c := range columnsOf(a, nil) {
-			for _, f := range c.treaties {
+	for _, figures := range p.treaties {
+		for _, f := range figures {
+			if math.IsInf(f.Terms.Limit, 1) {
+				top = max(top, 1.5*f.Terms.Retention, 1)
+			} else {
 				top = max(top, f.Terms.Retention+f.Terms.Limit)
 			}
 		}
 	}
-	if top == 0 {
-		return ""
-	}
-	var parts []string
-	columns := 1
-	for _, a := range all {
-		columns = max(columns, len(columnsOf(a, nil)))
-	}
-	for k, a := range all {
-		var scale [][]float64
-		if first := len(scales) - len(all); first+k >= 0 { // the best alone stands when there is no start programme
-			scale = scales[first+k]
-		}
-		parts = append(parts, towerPicture(currency, a, scale, upTo(top), columns))
-	}
-	return strings.Join(parts, "")
+	return top
 }
 
+// Sizes of a panel of layers.
 const (
-	blockWidth  = 66.0
-	columnWidth = 252.0
+	panelWidth  = 480.0
+	panelHeight = 380.0
+	blockWidth  = 58.0 // of a layer that is placed in full
 )
 
-func towerPicture(currency string, a optimize.Appraisal, scales [][]float64, top float64, room int) string {
-	columns := columnsOf(a, scales)
-	width := marginLeft + marginRight + columnWidth*float64(room)
-	height := 460.0
-	y := moneyAxis(0, top, "loss of the event, risk or year", currency)
-	y.scale = squareRoot
-	c := &chart{width: width, height: height, y: y}
-	c.y.from, c.y.to = height-marginBottom, marginTop
-	c.x.from, c.x.to = marginLeft, width-marginRight
-	last := math.Inf(1)
-	for _, m := range append([]float64{0, top / 50, top / 20, top / 10}, c.y.ticks(8)...) {
-		at := c.y.at(m)
-		if math.Abs(last-at) < 15 {
-			continue
-		}
-		c.line("grid", c.x.from, at, c.x.to, at)
-		c.text("tick", c.x.from-8, at+4, "end", c.y.format(m))
-		last = at
+// towersPicture draws the layers of programmes: a panel for each subject, a column for each programme. Height is money, width the share
+// placed; the right axis says how often the loss is exceeded.
+func towersPicture(currency string, scales [][][]float64, all ...optimize.Appraisal) string {
+	var b strings.Builder
+	for _, p := range panels(all, scales) {
+		fmt.Fprintf(&b, `<figure class="panel"><figcaption>%s</figcaption>%s</figure>`, escape(sentence(p.title)), p.picture(currency, all))
 	}
-	fmt.Fprintf(&c.body, `<text class="axis" transform="translate(14 %s) rotate(-90)" text-anchor="middle">%s</text>`, place((c.y.from+c.y.to)/2), html.EscapeString(c.y.label))
-	var quota []string
-	for _, f := range a.Treaties {
-		if f.Terms.Kind == treaty.QuotaShare && f.Terms.Placed() > 0 {
-			quota = append(quota, fmt.Sprintf("%s: %s ceded", f.Terms.Name, Percent(f.Terms.Cession)))
-		}
-	}
-	for k, col := range columns {
-		left := marginLeft + columnWidth*float64(k) + 46
-		c.periods(left-6, col.scale)
-		var labels []label
-		for _, f := range col.treaties {
-			low, high := c.y.at(f.Terms.Retention), c.y.at(f.Terms.Retention+f.Terms.Limit)
-			placed := blockWidth * f.Terms.Share
-			fmt.Fprintf(&c.body, `<g><title>%s</title><rect class="unplaced" x="%s" y="%s" width="%s" height="%s"/><rect class="block" x="%s" y="%s" width="%s" height="%s"/></g>`,
-				html.EscapeString(f.Terms.Name+": "+f.Terms.Describe(Money)), place(left), place(high), place(blockWidth), place(low-high), place(left), place(high), place(placed), place(low-high))
-			middle := (low + high) / 2
-			labels = append(labels, label{left + blockWidth - 4, middle - 7, fmt.Sprintf("%s xs %s", Money(f.Terms.Limit), Money(f.Terms.Retention))})
-			labels = append(labels, label{left + blockWidth - 4, middle + 8, fmt.Sprintf("%s, hit %s", Percent(f.Terms.Share), ReturnPeriod(f.AttachmentProbability.Value))})
-		}
-		c.labels(labels)
-		c.text("tick", left-40, height-28, "start", col.name)
-	}
-	if len(columns) == 0 {
-		c.text("label", (c.x.from+c.x.to)/2, height/2, "middle", "no excess cover")
-	}
-	c.text("axis", marginLeft+10, height-8, "start", strings.Join(quota, "; "))
-	return fmt.Sprintf(`<figure class="tower"><figcaption>%s</figcaption>%s</figure>`, html.EscapeString(a.Programme.Name),
-		c.svg("Layers of “"+a.Programme.Name+"”", "Height is money, filled width the share placed; left of each column the return periods of its loss, beside each layer its terms and how often it is hit"))
+	return b.String()
 }
 
-// periods marks, beside a column, the losses that are exceeded once in so many years.
-func (c *chart) periods(x float64, scale []float64) {
+func sentence(text string) string {
+	r := []rune(text)
+	if len(r) == 0 {
+		return ""
+	}
+	return strings.ToUpper(string(r[:1])) + string(r[1:])
+}
+
+func (p panel) picture(currency string, all []optimize.Appraisal) string {
+	room := frame{left: 62, right: 68, top: 22, bottom: 30}
+	if p.scale == nil {
+		room.right = 26
+	}
+	c := newChart(panelWidth, panelHeight, room, axis{}, moneyAxis(0, upTo(p.top()), p.unit, currency))
+	c.periods(p.scale)
+	width := (c.x.to - c.x.from) / float64(len(all))
+	var told []string
+	for k, a := range all {
+		left := c.x.from + width*float64(k) + 10
+		class := "block-other"
+		switch k {
+		case len(all) - 1:
+			class = "block-best"
+		case 0:
+			class = "block-start"
+		}
+		c.text("tick", left, c.height-10, "start", shortened(a.Programme.Name, width-6, tickSize))
+		if len(p.treaties[k]) == 0 {
+			c.text("tick", left+4, c.y.from-8, "start", "none")
+			told = append(told, a.Programme.Name+": none")
+			continue
+		}
+		told = append(told, a.Programme.Name+": "+c.layers(class, left, left+width-10, p.treaties[k]))
+	}
+	return c.svg("Layers: "+p.title+", "+p.unit, strings.Join(told, "; "))
+}
+
+// layers draws the blocks of one programme with their terms beside them, and tells them in words.
+func (c *chart) layers(class string, left, right float64, figures []optimize.TreatyFigure) string {
+	figures = slices.Clone(figures)
+	slices.SortStableFunc(figures, func(a, b optimize.TreatyFigure) int {
+		switch {
+		case a.Terms.Retention > b.Terms.Retention:
+			return -1
+		case a.Terms.Retention < b.Terms.Retention:
+			return 1
+		}
+		return 0
+	})
+	var told []string
+	next := math.Inf(-1) // where the next text may stand
+	for i, f := range figures {
+		t := f.Terms
+		low, high := c.y.at(t.Retention), c.y.at(t.Retention+t.Limit)
+		shift := 0.0
+		for _, o := range figures[:i] { // layers that overlap share the width
+			if t.Retention < o.Terms.Retention+o.Terms.Limit && o.Terms.Retention < t.Retention+t.Limit {
+				shift += o.Terms.Share
+			}
+		}
+		from := left + blockWidth*min(shift, 1-min(t.Share, 1))
+		fmt.Fprintf(&c.body, `<g><title>%s</title>`, escape(t.Name+": "+t.Describe(Terms)))
+		c.rectangle("unplaced", left, high, blockWidth, low-high)
+		c.rectangle(class, from, high, blockWidth*t.Share, low-high)
+		c.body.WriteString("</g>")
+		c.share(t.Share, left, from, (low+high)/2+4, low-high)
+		text := Terms(t.Limit) + " xs " + Terms(t.Retention)
+		y := max((low+high)/2+4, next)
+		if y-4 > low || y-4 < high {
+			c.line("leader", left+blockWidth, (low+high)/2, left+blockWidth+7, y-4)
+		}
+		c.text("note", left+blockWidth+9, y, "start", shortened(text, right-left-blockWidth-9, tickSize))
+		next = y + 14
+		told = append(told, fmt.Sprintf("%s, %s placed", text, percentOf(t.Share)))
+	}
+	return strings.Join(told, ", ")
+}
+
+// share writes the share placed into the wider of the two parts of a block that is high enough.
+func (c *chart) share(share, left, from, y, height float64) {
+	if share >= 1 || height < 15 {
+		return
+	}
+	if from > left || share > 0.5 {
+		c.text("tick", from+3, y, "start", percentOf(share))
+		return
+	}
+	c.text("tick", left+blockWidth-2, y, "end", percentOf(share))
+}
+
+func percentOf(x float64) string { return significant(100*x, 4) + " %" }
+
+// shortened cuts a text that would be drawn wider than the room for it.
+func shortened(text string, room, size float64) string {
+	r := []rune(clean(text))
+	for n := len(r); n > 1; n-- {
+		short := string(r[:n])
+		if n < len(r) {
+			short = strings.TrimRight(short, " ") + "…"
+		}
+		if textWidth(short, size) <= room {
+			return short
+		}
+	}
+	return string(r[:min(len(r), 1)])
+}
+
+// periods draws the right axis: the loss exceeded once in so many years.
+func (c *chart) periods(scale []float64) {
+	if scale == nil {
+		return
+	}
+	c.line("edge", c.x.to, c.y.from, c.x.to, c.y.to)
 	last := math.Inf(1)
 	for k, loss := range scale {
 		at := c.y.at(loss)
-		if loss <= 0 || loss > c.y.high || last-at < 13 {
+		if !(loss > 0) || loss > c.y.high || last-at < 14 {
 			continue
 		}
-		c.line("period-mark", x-4, at, x, at)
-		c.text("period", x-6, at+4, "end", significant(study.ReturnPeriods[k], 4)+" y")
+		c.line("edge", c.x.to, at, c.x.to+5, at)
+		c.text("tick", c.x.to+8, at+4, "start", "1 in "+significant(study.ReturnPeriods[k], 4))
 		last = at
 	}
+	c.text("tick", c.width-4, 12, "end", "exceeded")
 }

@@ -2,7 +2,10 @@ package report
 
 import (
 	"fmt"
+	"math"
+	"reflect"
 	"runtime/debug"
+	"strings"
 
 	"cedewright/cmd/internal/study"
 	"cedewright/optimize"
@@ -19,6 +22,7 @@ var leftOut = []string{
 	"Market prices come from a curve fitted to quotes, or from quotes in the study; capacity, relationships and the wordings behind them are not modelled.",
 	"Reinstatement premiums are pro rata as to amount, without brokerage and without a time factor.",
 	"Standard errors are those of the simulation alone. Whether the models of loss and the market curve are right they do not say.",
+	"The best programme was chosen on the same simulated years on which its figures are shown, which flatters it a little.",
 }
 
 // Version names the program and the version from which it was built.
@@ -28,96 +32,130 @@ func Version() string {
 		return "cedewright"
 	}
 	version := info.Main.Version
-	for _, s := range info.Settings {
-		if s.Key == "vcs.revision" && len(s.Value) >= 12 {
-			version += " " + s.Value[:12]
-		}
-	}
 	if version == "" || version == "(devel)" {
 		version = "development version"
+		for _, s := range info.Settings {
+			if s.Key == "vcs.revision" && len(s.Value) >= 12 {
+				version += " " + s.Value[:12]
+			}
+		}
 	}
 	return "cedewright " + version + ", " + info.GoVersion
 }
 
 // Recommendation says in two sentences what to buy and what it does.
 func Recommendation(s study.Searched) string {
-	best, start, none := s.Result.Best, s.Start, s.NoCover
 	if !s.Result.Feasible {
 		return fmt.Sprintf("No programme of the space keeps every constraint; the one shown breaks them least. %s", shortfalls(s))
 	}
-	first := fmt.Sprintf("Buy “%s”: %s for %s of premium a year, which costs a margin of %s and frees %s of required capital (%s), a rent of %s against a cost of capital of %s.",
-		best.Programme.Name, count(len(best.Programme.Treaties), "treaty", "treaties"), Estimated(best.CededPremium), Estimated(best.CededMargin), Estimated(best.Capital[0].Relief),
-		best.Capital[0].Standard, rent(best), Percent(s.CostOfCapital))
+	return whatToBuy(s) + " " + whatItCosts(s)
+}
+
+func whatToBuy(s study.Searched) string {
+	best := s.Result.Best
 	if len(best.Programme.Treaties) == 0 {
-		first = "Buy nothing: no programme of the space costs less than holding the capital for the whole risk."
+		return "Buy nothing: no programme that was appraised costs less than holding the capital for the whole risk."
 	}
-	second := fmt.Sprintf("Its total cost of margin and capital is %s a year, against %s for “%s” (%s) and %s without cover.",
-		Estimated(best.TotalCost), Estimated(start.TotalCost), start.Programme.Name, change(s, best.Programme.Name), Estimated(none.TotalCost))
-	if start.Programme.Name == none.Programme.Name {
-		second = fmt.Sprintf("Its total cost of margin and capital is %s a year, against %s without cover (%s).", Estimated(best.TotalCost), Estimated(none.TotalCost), change(s, best.Programme.Name))
+	verb, name := "Buy", best.Programme.Name
+	if sameTreaties(best, s.Start) {
+		verb, name = "Keep", s.Start.Programme.Name
 	}
-	return first + " " + second
+	text := fmt.Sprintf("%s “%s”: %s for %s %s of premium a year, which costs a margin of %s a year and frees %s of required capital (%s)",
+		verb, name, count(len(best.Programme.Treaties), "treaty", "treaties"), s.Currency, Estimated(best.CededPremium), Estimated(best.CededMargin),
+		Estimated(best.Capital[0].Relief), best.Capital[0].Standard)
+	if best.RentDefined {
+		text += fmt.Sprintf(", a rent of %s against a cost of capital of %s", EstimatedPercent(best.Rent), Percent(s.CostOfCapital))
+	}
+	return clean(text) + "."
 }
 
-func count(n int, one, many string) string {
-	if n == 1 {
-		return "1 " + one
-	}
-	return fmt.Sprintf("%d %s", n, many)
-}
-
-func rent(a optimize.Appraisal) string {
-	if !a.RentDefined {
-		return "no value (no relief)"
-	}
-	return EstimatedPercent(a.Rent)
-}
-
-// change gives the difference in total cost with its error on common years.
-func change(s study.Searched, name string) string {
-	for _, d := range s.Differences {
-		if d.Programme == name {
-			return "a difference of " + Estimated(d.TotalCost)
+// whatItCosts compares total cost with the start and with no cover.
+func whatItCosts(s study.Searched) string {
+	best, start, none := s.Result.Best, s.Start, s.NoCover
+	text := fmt.Sprintf("Margin and cost of capital together are %s a year", Estimated(best.TotalCost))
+	switch {
+	case len(best.Programme.Treaties) == 0:
+		text = fmt.Sprintf("That costs %s a year", Estimated(best.TotalCost))
+		if start.Programme.Name != none.Programme.Name {
+			text += fmt.Sprintf(", against %s with “%s”%s", Estimated(start.TotalCost), start.Programme.Name, change(s))
 		}
+	case start.Programme.Name == none.Programme.Name:
+		text += fmt.Sprintf(", against %s without cover%s", Estimated(none.TotalCost), change(s))
+	case sameTreaties(best, start):
+		text += fmt.Sprintf(", against %s without cover", Estimated(none.TotalCost))
+	default:
+		text += fmt.Sprintf(", against %s with “%s”%s and %s without cover", Estimated(start.TotalCost), start.Programme.Name, change(s), Estimated(none.TotalCost))
 	}
-	return "the same programme"
+	return clean(text) + "."
+}
+
+func sameTreaties(a, b optimize.Appraisal) bool {
+	return len(a.Programme.Treaties) == len(b.Programme.Treaties) && reflect.DeepEqual(a.Programme.Treaties, b.Programme.Treaties)
+}
+
+// change gives the difference in total cost of the best with its error on common years.
+func change(s study.Searched) string {
+	d, ok := difference(s.Appraised, s.Result.Best.Programme.Name)
+	if !ok {
+		return ""
+	}
+	text := "a difference of " + Estimated(d.TotalCost)
+	if d.TotalCost.StandardError > 0 && math.Abs(d.TotalCost.Value) < 2*d.TotalCost.StandardError {
+		text += ", which the simulation cannot tell from none"
+	}
+	return " (" + text + ")"
+}
+
+// searchWords says what was searched, how long, and why it ended.
+func searchWords(s study.Searched) string {
+	text := fmt.Sprintf("Searched: %s; %s appraised in %s, seed %d; %s", s.Space, count(s.Result.Evaluations, "programme", "programmes"),
+		count(s.Result.Generations, "generation", "generations"), s.Result.Seed, s.Result.Status)
+	if s.Result.Polished && s.Result.Status != optimize.Proven {
+		text += "; no single move on the steps improves the best"
+	}
+	return text + "."
 }
 
 func shortfalls(s study.Searched) string {
-	text := "In the way:"
+	var parts []string
 	for _, f := range s.Result.Shortfalls {
-		text += fmt.Sprintf(" %s is %s,", f.Keep.Measure, anyFigure(f.Value))
+		text := fmt.Sprintf("%s is %s, ", keepName(f.Keep), figureOf(f.Keep, f.Value))
 		if f.Keep.AtMost.Given && f.Value > f.Keep.AtMost.Value {
-			text += fmt.Sprintf(" at most %s is asked.", anyFigure(f.Keep.AtMost.Value))
+			text += fmt.Sprintf("at most %s is asked", figureOf(f.Keep, f.Keep.AtMost.Value))
 		} else {
-			text += fmt.Sprintf(" at least %s is asked.", anyFigure(f.Keep.AtLeast.Value))
+			text += fmt.Sprintf("at least %s is asked", figureOf(f.Keep, f.Keep.AtLeast.Value))
 		}
+		parts = append(parts, text)
 	}
-	return text
+	return "In the way: " + clean(strings.Join(parts, "; ")) + "."
 }
 
 // keepWords writes constraints in words.
 func keepWords(keep []optimize.Keep) []string {
 	var list []string
 	for _, k := range keep {
-		text := k.Measure
-		if k.Standard != "" {
-			text += " under " + k.Standard
-		}
+		text := keepName(k)
 		if k.AtLeast.Given {
-			text += " at least " + anyFigure(k.AtLeast.Value)
+			text += " at least " + figureOf(k, k.AtLeast.Value)
 		}
 		if k.AtMost.Given {
-			text += " at most " + anyFigure(k.AtMost.Value)
+			text += " at most " + figureOf(k, k.AtMost.Value)
 		}
-		list = append(list, text)
+		list = append(list, clean(text))
 	}
 	return list
 }
 
-// anyFigure writes a bound whose unit is money or a fraction.
-func anyFigure(x float64) string {
-	if x > -10 && x < 10 {
+func keepName(k optimize.Keep) string {
+	if k.Standard != "" {
+		return k.Measure + " under " + k.Standard
+	}
+	return k.Measure
+}
+
+// figureOf writes a figure of a measure: ratios are fractions, all others money.
+func figureOf(k optimize.Keep, x float64) string {
+	if strings.HasSuffix(k.Measure, "ratio") {
 		return Percent(x)
 	}
 	return Money(x)

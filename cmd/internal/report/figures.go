@@ -1,0 +1,181 @@
+package report
+
+import (
+	"fmt"
+
+	"cedewright/cmd/internal/study"
+	"cedewright/optimize"
+	"cedewright/portfolio/treaty"
+)
+
+// figureGroup is figures of programmes that belong together, a row each, a cell for each programme. Terminal and paper show the same.
+type figureGroup struct {
+	name string
+	rows []figureRow
+}
+
+type figureRow struct {
+	name  string
+	cells []string
+	total bool // a sum of the rows above it
+}
+
+// figureGroups gives the figures of programmes side by side, all money in one unit.
+func figureGroups(a study.Appraised, all []optimize.Appraisal) []figureGroup {
+	u := unitOfProgrammes(all)
+	row := func(name string, read func(optimize.Appraisal) string) figureRow {
+		r := figureRow{name: name}
+		for _, p := range all {
+			r.cells = append(r.cells, read(p))
+		}
+		return r
+	}
+	money := func(name string, read func(optimize.Appraisal) optimize.Estimate) figureRow {
+		return row(name, func(p optimize.Appraisal) string { return u.estimate(read(p)) })
+	}
+	total := func(r figureRow) figureRow { r.total = true; return r }
+
+	groups := []figureGroup{{"What is given to reinsurers, a year", []figureRow{
+		money("ceded premium", func(p optimize.Appraisal) optimize.Estimate { return p.CededPremium }),
+		money("+ reinstatement premium", func(p optimize.Appraisal) optimize.Estimate { return p.ReinstatementPremium }),
+		money("− commission", func(p optimize.Appraisal) optimize.Estimate { return p.Commission }),
+		money("− expected recoveries", func(p optimize.Appraisal) optimize.Estimate { return p.ExpectedRecoveries }),
+		total(money("= ceded margin", func(p optimize.Appraisal) optimize.Estimate { return p.CededMargin })),
+	}}}
+	for i, c := range all[0].Capital {
+		g := figureGroup{"Capital under the standard “" + c.Standard + "”", []figureRow{
+			money("required capital", func(p optimize.Appraisal) optimize.Estimate { return p.Capital[i].Net }),
+			money("capital relief", func(p optimize.Appraisal) optimize.Estimate { return p.Capital[i].Relief }),
+		}}
+		if a.OwnFunds > 0 {
+			g.rows = append(g.rows, row("own funds ratio", func(p optimize.Appraisal) string {
+				if i >= len(p.OwnFundsRatio) {
+					return "–"
+				}
+				return EstimatedPercent(p.OwnFundsRatio[i])
+			}))
+		}
+		groups = append(groups, g)
+	}
+	cost := figureGroup{"Total cost, a year", []figureRow{
+		money("ceded margin", func(p optimize.Appraisal) optimize.Estimate { return p.CededMargin }),
+		money("+ capital cost at "+Percent(a.CostOfCapital), func(p optimize.Appraisal) optimize.Estimate { return p.CapitalCost }),
+		total(money("= total cost", func(p optimize.Appraisal) optimize.Estimate { return p.TotalCost })),
+	}}
+	if len(a.Differences) > 0 {
+		cost.rows = append(cost.rows, row("difference to "+a.Differences[0].Against, func(p optimize.Appraisal) string {
+			if d, ok := difference(a, p.Programme.Name); ok {
+				return u.estimate(d.TotalCost)
+			}
+			return "–"
+		}))
+	}
+	cost.rows = append(cost.rows, row("rent (margin / relief)", rent))
+	return append(groups, cost, figureGroup{"Net result of a year", []figureRow{
+		money("expected", func(p optimize.Appraisal) optimize.Estimate { return p.NetResult.Mean }),
+		row("standard deviation", func(p optimize.Appraisal) string { return u.amount(p.NetResult.StandardDeviation) }),
+		money("1 in 10", func(p optimize.Appraisal) optimize.Estimate { return p.NetResult.OneIn10 }),
+		money("1 in 200", func(p optimize.Appraisal) optimize.Estimate { return p.NetResult.OneIn200 }),
+	}})
+}
+
+func unitOfProgrammes(all []optimize.Appraisal) unit {
+	var amounts []float64
+	for _, p := range all {
+		amounts = append(amounts, p.CededPremium.Value, p.TotalCost.Value, p.NetResult.OneIn200.Value)
+		for _, c := range p.Capital {
+			amounts = append(amounts, c.Net.Value)
+		}
+	}
+	return unitOf(amounts...)
+}
+
+// difference gives the difference of total cost of a programme to the one that all are compared with.
+func difference(a study.Appraised, name string) (study.Difference, bool) {
+	for _, d := range a.Differences {
+		if d.Programme == name {
+			return d, true
+		}
+	}
+	return study.Difference{}, false
+}
+
+// rent gives margin over relief; a programme without relief has none.
+func rent(a optimize.Appraisal) string {
+	if !a.RentDefined {
+		return "–"
+	}
+	return EstimatedPercent(a.Rent)
+}
+
+// treatyHead names the figures of treatyCells.
+var treatyHead = []string{"treaty", "premium", "rate on line", "recovery", "margin", "attaches", "exhausts", "relief"}
+
+// treatyCells gives a treaty's figures in the order of treatyHead, money in one unit for the programme.
+func treatyCells(f optimize.TreatyFigure, u unit) []string {
+	line, attaches, exhausts := Percent(f.RateOnLine), estimatedPeriod(f.AttachmentProbability), estimatedPeriod(f.ExhaustionProbability)
+	if f.RateOnLine == 0 {
+		line = "–"
+	}
+	if f.Terms.Kind == treaty.QuotaShare {
+		line, attaches, exhausts = "–", "–", "–"
+	}
+	return []string{clean(f.Terms.Name), u.estimate(f.Premium), line, u.estimate(f.ExpectedRecovery), u.estimate(f.Margin), attaches, exhausts, u.estimate(f.Relief)}
+}
+
+// unitOfTreaties gives the unit for the treaties of a programme.
+func unitOfTreaties(p optimize.Appraisal) unit {
+	var amounts []float64
+	for _, f := range p.Treaties {
+		amounts = append(amounts, f.Premium.Value, f.ExpectedRecovery.Value, f.Relief.Value)
+	}
+	return unitOf(amounts...)
+}
+
+// termsOf says what a treaty promises and what priced it.
+func termsOf(f optimize.TreatyFigure) string {
+	text := f.Terms.Describe(Terms)
+	if len(f.Terms.Classes)+len(f.Terms.Perils) > 0 {
+		text += "; covers " + subject(f.Terms)
+	}
+	if len(f.Terms.After) > 0 {
+		text += "; after " + joined(f.Terms.After)
+	}
+	by := f.PricedBy
+	if f.Terms.Kind == treaty.QuotaShare {
+		by += fmt.Sprintf(", %s of ceded premium", Percent(f.CommissionRate))
+	}
+	if by != "" {
+		text += "; priced by " + by
+	}
+	return clean(text)
+}
+
+// subject names what a treaty looks at.
+func subject(t treaty.Treaty) string {
+	switch {
+	case len(t.Classes) == 0 && len(t.Perils) == 0:
+		return "all losses"
+	case len(t.Classes) == 0:
+		return joined(t.Perils)
+	case len(t.Perils) == 0:
+		return joined(t.Classes)
+	}
+	return joined(t.Perils) + " in " + joined(t.Classes)
+}
+
+// joined gives "a", "a and b", "a, b and c".
+func joined(names []string) string {
+	text := ""
+	for i, n := range names {
+		switch {
+		case i == 0:
+		case i == len(names)-1:
+			text += " and "
+		default:
+			text += ", "
+		}
+		text += n
+	}
+	return text
+}

@@ -1,0 +1,131 @@
+package report
+
+import (
+	"fmt"
+	"io"
+	"math"
+
+	"cedewright/cmd/internal/study"
+	"cedewright/market"
+	"cedewright/optimize"
+)
+
+// PrintFitted writes the answer of fit for a terminal.
+func PrintFitted(w io.Writer, f study.Fitted, s Style) {
+	printHead(w, s, f.Head, "Market curves against their quotes")
+	for _, c := range f.Curves {
+		fmt.Fprintln(w, s.in(bold, clean(curveWords(c))))
+		if c.Chosen == nil {
+			wrapped(w, "Set by hand in the study; no quote stands behind it.", "", s.width())
+			fmt.Fprintln(w)
+			printPoints(w, s, c.Curve)
+			continue
+		}
+		printTable(w, s, quoteTable(c.Chosen))
+		wrapped(w, quoteWords(c.Chosen), "", s.width())
+		fmt.Fprintln(w)
+		printTable(w, s, candidateTable(c))
+		printPoints(w, s, c.Curve)
+	}
+	printFoot(w, s, f.Head)
+}
+
+func curveWords(c study.CurveFit) string {
+	return fmt.Sprintf("Curve %s: %s; brokerage %s, minimum rate on line %s", c.Curve.Name, c.Curve.Distortion, Percent(c.Curve.Brokerage), Percent(c.Curve.MinimumRateOnLine))
+}
+
+// textTable is a table for terminal and paper alike; the first column and the last if it is a remark read left.
+type textTable struct {
+	Title  string
+	Head   []string
+	Rows   [][]string
+	Remark bool // the last column is a remark
+}
+
+func printTable(w io.Writer, s Style, t textTable) {
+	g := newGrid(t.Title, append([]string{}, t.Head...)...)
+	if t.Remark {
+		g.left[len(t.Head)-1] = true
+	}
+	for _, r := range t.Rows {
+		g.add(append([]string{}, r...)...)
+	}
+	g.print(w, s)
+}
+
+// quoteTable shows a fit quote by quote.
+func quoteTable(f *market.Fit) textTable {
+	t := textTable{Head: []string{"quote", "attaches", "exhausts", "expected loss", "quoted", "fitted", "residual", "left out", "multiple", ""}, Remark: true}
+	for _, q := range f.Quotes {
+		expected, multiple := "–", "–"
+		if q.Multiple > 0 {
+			expected, multiple = percentTo(q.RateOnLine/q.Multiple, 2, false), fixed(q.Multiple, 2)
+		}
+		t.Rows = append(t.Rows, []string{q.Name, Percent(q.Attachment), Percent(q.Exhaustion), expected, percentTo(q.RateOnLine, 2, false), percentTo(q.Fitted, 2, false),
+			percentTo(q.Residual, 1, true), percentTo(q.LeftOut/q.RateOnLine-1, 1, true), multiple, quoteMark(f, q)})
+	}
+	return t
+}
+
+// largeResidual is the relative error of a quote from which it is marked: twice what is typical of the fit, but no less than 3 %.
+func largeResidual(f *market.Fit) float64 { return max(2*f.InSample, 0.03) }
+
+// quoteMark says what is odd about a quote.
+func quoteMark(f *market.Fit, q market.FittedQuote) string {
+	switch {
+	case q.Weight == 0:
+		return "weight 0, not used"
+	case math.Abs(q.Residual) > largeResidual(f) && q.Residual > 0:
+		return "cheap against the curve"
+	case math.Abs(q.Residual) > largeResidual(f):
+		return "dear against the curve"
+	case q.BelowRange:
+		return "alone in its range"
+	}
+	return ""
+}
+
+func quoteWords(f *market.Fit) string {
+	text := "Rates on line include brokerage. Residual: fitted over quoted, less 1; left out: the same when the curve is fitted to the other quotes. " +
+		fmt.Sprintf("Multiple: quoted rate over expected loss. The quotes speak for probabilities from %s to %s; prices beyond are extrapolated.", Percent(f.LowestTail), Percent(f.HighestTail))
+	if f.Family == market.FamilyFree && f.Pull > 0 {
+		text += fmt.Sprintf(" Where no quote speaks, the curve is pulled towards the family %s with the weight of %s.", f.Toward, quotesWorth(f.Pull))
+	}
+	return text
+}
+
+func quotesWorth(pull float64) string {
+	if pull == 1 {
+		return "one quote"
+	}
+	return rounded(pull) + " quotes"
+}
+
+// candidateTable compares all families.
+func candidateTable(c study.CurveFit) textTable {
+	t := textTable{Title: "All families: typical relative error of a quote's price", Head: []string{"family", "parameter", "in sample", "left out", ""}, Remark: true}
+	for _, f := range c.Candidates {
+		parameter, note := "–", ""
+		if f.Family != market.FamilyFree {
+			parameter = Number(optimize.Estimate{Value: f.Parameter, StandardError: f.StandardError})
+		}
+		if c.Chosen != nil && f.Family == c.Chosen.Family {
+			note = "chosen"
+		}
+		t.Rows = append(t.Rows, []string{f.Family, parameter, percentTo(f.InSample, 1, false), percentTo(f.LeaveOneOut, 1, false), note})
+	}
+	return t
+}
+
+func printPoints(w io.Writer, s Style, c market.Curve) {
+	g := newGrid("Price of a thin layer by how often it is hit, over its limit, before brokerage", "hit")
+	price, multiple := []string{"price"}, []string{"over probability"}
+	for _, period := range []float64{500, 200, 100, 50, 20, 10, 5, 2} {
+		at := c.Distortion.At(1 / period)
+		g.head = append(g.head, fmt.Sprintf("1 in %v", period))
+		price, multiple = append(price, percentTo(at, 2, false)), append(multiple, fixed(at*period, 2))
+	}
+	g.add(price...)
+	g.add(multiple...)
+	g.print(w, s)
+}
