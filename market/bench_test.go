@@ -22,7 +22,7 @@ func BenchmarkFitFree(b *testing.B) {
 		quotes := syntheticQuotes(n, Wang{0.4})
 		b.Run(map[int]string{15: "quotes=15", 50: "quotes=50"}[n], func(b *testing.B) {
 			for b.Loop() {
-				if _, err := FitFree(quotes, 0); err != nil {
+				if _, err := FitFree(quotes, 0, FreeOptions{}); err != nil {
 					b.Fatal(err)
 				}
 			}
@@ -33,7 +33,7 @@ func BenchmarkFitFree(b *testing.B) {
 func BenchmarkFitMixture(b *testing.B) {
 	quotes := syntheticQuotes(200, Wang{0.4})
 	for b.Loop() {
-		if _, err := fitMixture(quotes, 0, Wang{0.3}, 1); err != nil {
+		if _, err := fitMixture(quotes, 0, Wang{0.3}, 1, false); err != nil {
 			b.Fatal(err)
 		}
 	}

@@ -214,3 +214,15 @@ func checkGrid() []float64 {
 	}
 	return grid
 }
+
+// Loaded is another distortion with its prices raised: min((1 + Loading)·g(s), 1), Loading ≥ 0, concave like the other.
+type Loaded struct {
+	Of      Distortion
+	Loading float64
+}
+
+// At gives g(s).
+func (d Loaded) At(s float64) float64 { return min((1+d.Loading)*d.Of.At(s), 1) }
+
+// String names the other and the loading.
+func (d Loaded) String() string { return fmt.Sprintf("%v, loaded by %.4g %%", d.Of, 100*d.Loading) }

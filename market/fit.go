@@ -5,6 +5,7 @@ import (
 	"math"
 
 	"cedewright/portfolio/fault"
+	"cedewright/portfolio/treaty"
 )
 
 // FittedQuote is a quote and what a fit makes of it.
@@ -33,6 +34,9 @@ type Fit struct {
 	LowestTail    float64 // smallest probability that a quote speaks for; prices beyond it are extrapolated
 	HighestTail   float64
 	Warnings      []string
+
+	anchor   Distortion // of a free curve's pull
+	absolute bool       // the free curve minimises absolute errors
 }
 
 // checkQuotes gives every fault of the quotes, and those of weight above 0.
@@ -212,8 +216,8 @@ func (f *Fit) describe(quotes []Quote, brokerage float64) {
 		p.Residual = p.Fitted/q.RateOnLine - 1
 		if e := q.expected(); e > 0 {
 			p.Multiple = q.RateOnLine / e
-			if q.Weight > 0 && q.RateOnLine*(1-brokerage) < e {
-				f.Warnings = append(f.Warnings, fmt.Sprintf("quote %s: rate on line %.4g after brokerage is below its expected loss %.4g: no distortion can price it", q.Name, q.RateOnLine*(1-brokerage), e))
+			if q.Weight > 0 && q.asked(brokerage) < e {
+				f.Warnings = append(f.Warnings, fmt.Sprintf("quote %s: rate on line %.4g after brokerage is below its expected loss %.4g: no distortion can price it", q.Name, q.asked(brokerage), e))
 			}
 		}
 		f.Curve = q.Curve
@@ -229,6 +233,14 @@ func (f *Fit) describe(quotes []Quote, brokerage float64) {
 	if n := len(quotes); n < 5 {
 		f.Warnings = append(f.Warnings, fmt.Sprintf("curve %s rests on %d quotes", f.Curve, n))
 	}
+}
+
+// asked gives what the market asks for the loss, as a fraction of the limit, after brokerage.
+func (q Quote) asked(brokerage float64) float64 {
+	if q.Own() && q.Terms.Kind == treaty.QuotaShare {
+		return q.RateOnLine - brokerage
+	}
+	return q.RateOnLine * (1 - brokerage)
 }
 
 // tails gives the range of probabilities that a quote speaks for.

@@ -86,7 +86,7 @@ func TestOracleLeastSquares(t *testing.T) {
 			}
 			rows = append(rows, row)
 		}
-		x, err := solveMixture(rows)
+		x, err := solveMixture(rows, len(o.P))
 		if err != nil {
 			t.Fatal(err)
 		}
@@ -161,7 +161,7 @@ func TestOracleFamilies(t *testing.T) {
 			t.Errorf("%s: parameter %.8g, objective %.12g, want %.8g and %.12g", c.family, f.Parameter, f.Objective, c.parameter, c.objective)
 		}
 	}
-	free, err := FitFree(o.ownQuotes(), 0)
+	free, err := FitFree(o.ownQuotes(), 0, FreeOptions{})
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -185,7 +185,7 @@ func TestFreeCurveReprices(t *testing.T) {
 		{Mixture{Supremum: 0.004, Knots: []Knot{{1, 0.996}}}, 1e-6}, // a minimum rate on line
 	} {
 		quotes := syntheticQuotes(15, c.d)
-		m, err := fitMixture(quotes, 0, Wang{0.3}, 0)
+		m, err := fitMixture(quotes, 0, Wang{0.3}, 0, false)
 		if err != nil {
 			t.Fatal(err)
 		}
@@ -206,7 +206,7 @@ func TestFreeCurveReprices(t *testing.T) {
 		q.RateOnLine = q.rate(atKnots, 0)
 		quotes = append(quotes, q)
 	}
-	m, err := fitMixture(quotes, 0, Wang{0.3}, 0)
+	m, err := fitMixture(quotes, 0, Wang{0.3}, 0, false)
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -233,7 +233,7 @@ func TestFreeCurveUnderNoise(t *testing.T) {
 			for k := range noisy {
 				noisy[k].RateOnLine *= math.Exp(0.1 * r.NormFloat64())
 			}
-			f, err := FitFree(noisy, 0)
+			f, err := FitFree(noisy, 0, FreeOptions{})
 			if err != nil {
 				t.Fatal(err)
 			}
@@ -277,11 +277,11 @@ func TestFitIgnoresOrder(t *testing.T) {
 	}
 	rapid.Check(t, func(t *rapid.T) {
 		shuffled := rapid.Permutation(quotes).Draw(t, "order")
-		a, err := fitMixture(quotes, 0, Wang{0.3}, 1)
+		a, err := fitMixture(quotes, 0, Wang{0.3}, 1, false)
 		if err != nil {
 			t.Fatal(err)
 		}
-		b, err := fitMixture(shuffled, 0, Wang{0.3}, 1)
+		b, err := fitMixture(shuffled, 0, Wang{0.3}, 1, false)
 		if err != nil {
 			t.Fatal(err)
 		}
@@ -309,7 +309,7 @@ func TestCatastropheBonds(t *testing.T) {
 		}
 		quotes = append(quotes, q)
 	}
-	free, err := FitFree(quotes, 0)
+	free, err := FitFree(quotes, 0, FreeOptions{})
 	if err != nil {
 		t.Fatal(err)
 	}
@@ -326,7 +326,7 @@ func TestCatastropheBonds(t *testing.T) {
 
 func TestReadQuotes(t *testing.T) {
 	const header = "curve,attachment_probability,exhaustion_probability,expected_loss,rate_on_line,weight\n"
-	good, err := ReadQuotes(strings.NewReader(header+"wind,0.1,0.04,0.065,0.15,\nwind,0.02,0.02,0.02,0.06,2\n"), "q.csv")
+	good, err := ReadQuotes(strings.NewReader(header+"wind,0.1,0.04,0.065,0.15,\nwind,0.02,0.02,0.02,0.06,2\n"), "q.csv", "EUR")
 	if err != nil || len(good) != 2 || good[0].Weight != 1 || good[1].Weight != 2 || good[1].Line != 3 {
 		t.Fatalf("%+v, %v", good, err)
 	}
@@ -343,18 +343,18 @@ func TestReadQuotes(t *testing.T) {
 		header:                                  `q.csv: no quote; allowed: at least one row below the header`,
 		"curve,rate_on_line\nwind,0.1\n":        `attachment_probability: the column is missing`,
 	} {
-		if _, err := ReadQuotes(strings.NewReader(text), "q.csv"); err == nil || !strings.Contains(err.Error(), want) {
+		if _, err := ReadQuotes(strings.NewReader(text), "q.csv", "EUR"); err == nil || !strings.Contains(err.Error(), want) {
 			t.Errorf("%q:\ngot  %v\nwant %s", text, err, want)
 		}
 	}
 	none := syntheticQuotes(2, Wang{0.4})
 	none[0].Weight, none[1].Weight = 0, 0
-	if _, err := FitFree(none, 0); err == nil || !strings.Contains(err.Error(), "no quote with a weight above 0") {
+	if _, err := FitFree(none, 0, FreeOptions{}); err == nil || !strings.Contains(err.Error(), "no quote with a weight above 0") {
 		t.Errorf("no weight: %v", err)
 	}
 	cheap := syntheticQuotes(6, Wang{0.4})
 	cheap[2].RateOnLine = cheap[2].ExpectedLoss / 2
-	f, err := FitFree(cheap, 0)
+	f, err := FitFree(cheap, 0, FreeOptions{})
 	if err != nil || !slices.ContainsFunc(f.Warnings, func(w string) bool { return strings.Contains(w, "below its expected loss") }) {
 		t.Errorf("a rate below the expected loss gives no warning: %v", err)
 	}
@@ -365,7 +365,7 @@ func FuzzReadQuotes(f *testing.F) {
 	f.Add("")
 	f.Add("curve;rate\n")
 	f.Fuzz(func(t *testing.T, text string) {
-		quotes, err := ReadQuotes(strings.NewReader(text), "q.csv")
+		quotes, err := ReadQuotes(strings.NewReader(text), "q.csv", "EUR")
 		if err != nil {
 			return
 		}

@@ -23,23 +23,40 @@ const (
 // pulls are the strengths of the pull that are tried, in quotes' worth of weight.
 var pulls = []float64{0, 0.3, 1, 3, largestPseudoFit}
 
-// FitFree fits the free concave curve to quotes: of all increasing concave distortions (with kinks on a fine grid) the one with the
-// least weighted sum of squared relative errors, found to the global optimum. Where no quote speaks, pseudo-quotes pull it towards the
-// better of two families (proportional hazard, Wang); the strength of the pull is the one with the least leave-one-out error.
-func FitFree(quotes []Quote, brokerage float64) (*Fit, error) {
+// FreeOptions are choices of the fit of a free curve.
+type FreeOptions struct {
+	Absolute bool       // least weighted sum of absolute relative errors instead of squares; for at most 60 quotes
+	Toward   Distortion // pulls the curve where no quote speaks, instead of the better family; nil = that family
+	Name     string     // what Toward is called
+}
+
+// FitFree fits the free concave curve to quotes: of all increasing concave distortions (with kinks on a fine grid) the one with the least weighted sum
+// of squared (or absolute) relative errors, found to the global optimum. Quotes with a bid or an offer are priced between them, as far as one
+// curve can. Where no quote speaks, pseudo-quotes pull it towards the better of two families (proportional hazard, Wang) or the distortion
+// given; the strength of the pull is the one with the least leave-one-out error.
+func FitFree(quotes []Quote, brokerage float64, o FreeOptions) (*Fit, error) {
 	used, err := checkQuotes(quotes)
 	if err != nil {
 		return nil, err
 	}
+	if o.Absolute && len(used) > mostConsistent {
+		return nil, ErrTooManyQuotes
+	}
 	parameters := map[string]float64{}
-	toward, anchor, err := betterFamily(used, brokerage, parameters)
+	anchor := func(quotes []Quote) (string, Distortion, error) {
+		if o.Toward != nil {
+			return o.Name, o.Toward, nil
+		}
+		return betterFamily(quotes, brokerage, parameters)
+	}
+	toward, whole, err := anchor(used)
 	if err != nil {
 		return nil, err
 	}
 	anchors := make([]Distortion, len(used)) // of the fits that leave one quote out
 	if len(used) >= 3 {
 		for i := range used {
-			if _, anchors[i], err = betterFamily(without(used, i), brokerage, parameters); err != nil {
+			if _, anchors[i], err = anchor(without(used, i)); err != nil {
 				return nil, err
 			}
 		}
@@ -49,14 +66,14 @@ func FitFree(quotes []Quote, brokerage float64) (*Fit, error) {
 		if pull == 0 && len(used) < 3 {
 			continue // nothing would hold the curve where no quote speaks
 		}
-		d, err := fitMixture(used, brokerage, anchor, pull)
+		d, err := fitMixture(used, brokerage, whole, pull, o.Absolute)
 		if err != nil {
 			return nil, err
 		}
-		f := &Fit{Family: FamilyFree, Distortion: d, Pull: pull, Toward: toward}
+		f := &Fit{Family: FamilyFree, Distortion: d, Pull: pull, Toward: toward, anchor: whole, absolute: o.Absolute}
 		f.describe(quotes, brokerage)
 		if err := f.leaveOneOut(used, func(rest []Quote, left int) (Distortion, error) {
-			return fitMixture(rest, brokerage, anchors[left], pull)
+			return fitMixture(rest, brokerage, anchors[left], pull, o.Absolute)
 		}, brokerage); err != nil {
 			return nil, err
 		}
@@ -97,49 +114,112 @@ func betterFamily(quotes []Quote, brokerage float64, parameters map[string]float
 	return name, best, nil
 }
 
-// fitMixture solves the least squares over mixtures: the prices of the parts are columns, the quotes rows, and the weights are at least 0
-// and add up to 1. Rows are made homogeneous by taking the quote from every column, after which one plain non-negative least squares
-// with the row Σw = 1 appended gives the optimum up to a factor (exact, not a penalty).
-func fitMixture(quotes []Quote, brokerage float64, anchor Distortion, pull float64) (Mixture, error) {
+// fitMixture solves the least squares over mixtures: the prices of the parts are columns, the quotes rows, and the weights are at least 0 and add up to
+// 1. Rows are made homogeneous by taking the quote from every column, after which one plain non-negative least squares with the row Σw = 1
+// appended gives the optimum up to a factor (exact, not a penalty). Bids and offers are rows with a slack of at least 0 and a large weight.
+func fitMixture(quotes []Quote, brokerage float64, anchor Distortion, pull float64, absolute bool) (Mixture, error) {
 	tails := knots(quotes)
-	rows := make([][]float64, 0, len(quotes)+pseudoQuotes+1)
+	var rows [][]float64 // relative errors, homogeneous
+	var weights []float64
 	for _, q := range quotes {
 		row, target := q.columns(tails, brokerage)
-		weight := math.Sqrt(q.Weight) / (q.RateOnLine * (1 - brokerage))
 		for j := range row {
-			row[j] = (row[j] - target) * weight
+			row[j] = row[j]/target - 1
 		}
-		rows = append(rows, row)
+		rows, weights = append(rows, row), append(weights, q.Weight)
 	}
-	if pull > 0 {
-		for i := range pseudoQuotes {
-			s := lowestPseudo * math.Pow(highestPseudo/lowestPseudo, float64(i)/(pseudoQuotes-1))
-			at := anchor.At(s)
-			row := []float64{1}
-			for _, t := range tails {
-				row = append(row, min(s/t, 1))
-			}
-			for j := range row {
-				row[j] = (row[j] - at) / at * math.Sqrt(pull/pseudoQuotes)
-			}
-			rows = append(rows, row)
+	for i := 0; pull > 0 && i < pseudoQuotes; i++ {
+		s := lowestPseudo * math.Pow(highestPseudo/lowestPseudo, float64(i)/(pseudoQuotes-1))
+		at := anchor.At(s)
+		row := []float64{1/at - 1}
+		for _, t := range tails {
+			row = append(row, min(s/t, 1)/at-1)
+		}
+		rows, weights = append(rows, row), append(weights, pull/pseudoQuotes)
+	}
+	limits := bidAndOfferRows(quotes, rows)
+	if absolute {
+		x, err := leastAbsolute(rows, weights, limits)
+		return mixtureOf(x, tails), err
+	}
+	columns := len(tails) + 1
+	for i, row := range rows {
+		for j := range row {
+			row[j] *= math.Sqrt(weights[i])
 		}
 	}
-	x, err := solveMixture(rows)
+	for i, row := range limits {
+		wide := make([]float64, columns+len(limits))
+		for j, v := range row {
+			wide[j] = v * limitWeight
+		}
+		wide[columns+i] = -limitWeight // row·w ≥ 0
+		rows = append(rows, wide)
+	}
+	for i, row := range rows {
+		rows[i] = append(row, make([]float64, columns+len(limits)-len(row))...)
+	}
+	x, err := solveMixture(rows, columns)
 	if err != nil {
 		return Mixture{}, err
 	}
 	return mixtureOf(x, tails), nil
 }
 
-// solveMixture gives the weights, at least 0, in sum 1, that minimise the sum of squares of homogeneous rows.
-func solveMixture(rows [][]float64) ([]float64, error) {
+// limitWeight makes a bid or an offer all but a hard constraint: it is missed by about 1e-8 of the rate.
+const limitWeight = 1e4
+
+// bidAndOfferRows gives rows that must not be negative: price over bid less 1, and 1 less price over offer, from rows of price over quote less 1.
+func bidAndOfferRows(quotes []Quote, rows [][]float64) [][]float64 {
+	var limits [][]float64
+	for j, q := range quotes {
+		for _, limit := range []struct{ rate, sign float64 }{{q.Bid, 1}, {q.Offer, -1}} {
+			if limit.rate == 0 {
+				continue
+			}
+			row := make([]float64, len(rows[j]))
+			for k, v := range rows[j] {
+				row[k] = limit.sign * (1 + v - limit.rate/q.RateOnLine)
+			}
+			limits = append(limits, row)
+		}
+	}
+	return limits
+}
+
+// leastAbsolute gives the weights with the least weighted sum of absolute errors that keep the limits as far as they can.
+func leastAbsolute(rows [][]float64, weights []float64, limits [][]float64) ([]float64, error) {
+	columns := len(rows[0])
+	b := bounds{rows: rows}
+	p := b.programme()
+	beyond := p.addColumns(2*len(rows) + 2*len(limits))
+	for j, row := range rows {
+		entries := p.addRow(row, 0)
+		entries[beyond+2*j], entries[beyond+2*j+1] = 1, -1
+		p.cost[beyond+2*j], p.cost[beyond+2*j+1] = weights[j], weights[j]
+	}
+	for j, row := range limits {
+		entries := p.addRow(row, 0)
+		slack, broken := beyond+2*len(rows)+2*j, beyond+2*len(rows)+2*j+1
+		entries[slack], entries[broken] = -1, 1
+		p.cost[broken] = limitWeight
+	}
+	_, x, err := p.solve()
+	if err != nil {
+		return nil, err
+	}
+	return x[:columns], nil
+}
+
+// solveMixture gives the weights, at least 0, in sum 1, that minimise the sum of squares of homogeneous rows. The first so many columns are weights, the
+// rest slacks.
+func solveMixture(rows [][]float64, weights int) ([]float64, error) {
 	columns := len(rows[0])
 	a := mat.NewDense(len(rows)+1, columns, nil)
 	for i, row := range rows {
 		a.SetRow(i, row)
 	}
-	for j := range columns {
+	for j := range weights {
 		a.Set(len(rows), j, 1)
 	}
 	b := make([]float64, len(rows)+1)
@@ -148,6 +228,7 @@ func solveMixture(rows [][]float64) ([]float64, error) {
 	if err != nil {
 		return nil, err
 	}
+	x = x[:weights]
 	total := 0.0
 	for _, w := range x {
 		total += w
@@ -210,6 +291,9 @@ func (q Quote) columns(tails []float64, brokerage float64) ([]float64, float64) 
 		}
 		return row, target
 	}
+	if q.Terms.Kind == treaty.QuotaShare { // brokerage is a part of the premium, not of what the market asks for the loss
+		target = q.RateOnLine - brokerage
+	}
 	net := make([]float64, len(q.Recoveries))
 	for i, r := range q.Recoveries {
 		net[i] = r/q.Terms.Limit - q.RateOnLine*q.Terms.Reinstated(r)
@@ -223,6 +307,13 @@ func (q Quote) columns(tails []float64, brokerage float64) ([]float64, float64) 
 		}
 		return 0
 	})
+	return tailMeans(net, q.Years, tails), target
+}
+
+// tailMeans gives the supremum and the tail values at risk at the knots of a sample of so many years, of which the values that are not 0 are given,
+// largest first.
+func tailMeans(net []float64, years int, tails []float64) []float64 {
+	row := make([]float64, len(tails)+1)
 	if len(net) > 0 {
 		row[0] = max(net[0], 0)
 	}
@@ -231,9 +322,9 @@ func (q Quote) columns(tails []float64, brokerage float64) ([]float64, float64) 
 		sums[i+1] = sums[i] + x
 	}
 	for k, t := range tails {
-		row[k+1] = tailMean(net, sums, t*float64(q.Years), q.Years)
+		row[k+1] = tailMean(net, sums, t*float64(years), years)
 	}
-	return row, target
+	return row
 }
 
 // tailMean gives the mean of the largest count (not whole) of years values, of which those that are not 0 are given, largest first, with

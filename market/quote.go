@@ -17,12 +17,14 @@ type Quote struct {
 	Bid, Offer float64 // rates on line between which the market would deal; 0 = RateOnLine itself
 	Weight     float64 // ≥ 0; 0 leaves it out of the fit
 	Line       int     // line of the file that it came from; 0 = none
+	Arrival
 
 	// A market-wide layer, without reinstatements: its loss, as a fraction of the limit, is above 0 with probability Attachment and total
 	// with probability Exhaustion, and ExpectedLoss on average.
 	Attachment, Exhaustion, ExpectedLoss float64
 
-	// A layer of the cedant's own; Attachment, Exhaustion and ExpectedLoss are then read off the book.
+	// A layer of the cedant's own, or a quota share, whose recoveries are its subject losses, whose limit is its subject premium and whose rate is
+	// 1 − commission; Attachment, Exhaustion and ExpectedLoss are then read off the book.
 	Terms      *treaty.Treaty
 	Recoveries []float64 // positive annual recoveries at 100 %, largest first
 	Years      int       // of the book
@@ -97,6 +99,9 @@ func (q Quote) rate(d Distortion, brokerage float64) float64 {
 		return math.NaN()
 	}
 	terms := q.quoted()
+	if terms.Kind == treaty.QuotaShare {
+		return t.Price(q.Recoveries)/terms.Limit + brokerage
+	}
 	p, err := t.BasePremium(terms, q.Recoveries)
 	if err != nil {
 		return math.NaN()

@@ -69,7 +69,7 @@ func (s *Study) quotes(key, file, curve string, curves []string) ([]market.Quote
 	var all []market.Quote
 	err := s.read(key+".quotes", file, func(r io.Reader, path string) (int, error) {
 		var err error
-		if all, err = market.ReadQuotes(r, path); err != nil {
+		if all, err = market.ReadQuotes(r, path, s.settings.Currency); err != nil {
 			return 0, err
 		}
 		var faults fault.List
@@ -127,7 +127,7 @@ func fitCurve(curve market.Curve, quotes []market.Quote, choice string) (CurveFi
 		}
 		result.Candidates = append(result.Candidates, fit)
 	}
-	free, err := market.FitFree(quotes, curve.Brokerage)
+	free, err := market.FitFree(quotes, curve.Brokerage, market.FreeOptions{})
 	if err != nil {
 		return result, err
 	}
