@@ -77,6 +77,9 @@ func (t *Tariff) BasePremium(terms treaty.Treaty, descending []float64) (Premium
 // newtonSteps is ample: on a finite sample Newton's method on a convex piecewise linear function ends after a few pieces.
 const newtonSteps = 200
 
+// rootTolerance is a step, relative to the premium, that rounding of sums over a hundred thousand years can explain.
+const rootTolerance = 1e-12
+
 // solvePremium finds the root of P·keep = ρ_g(R − P·F) by Newton's method from a start at or below it.
 func (t *Tariff) solvePremium(recoveries, reinstated []float64, keep, start float64) (float64, error) {
 	n, years := len(recoveries), len(t.weights)
@@ -116,7 +119,7 @@ func (t *Tariff) solvePremium(recoveries, reinstated []float64, keep, start floa
 			return 0, fmt.Errorf("market: base premium: no root near %v", p)
 		}
 		p += step
-		if math.Abs(step) <= 1e-15*math.Abs(p) {
+		if math.Abs(step) <= rootTolerance*math.Abs(p) { // on the last piece: the step itself is exact but for rounding
 			return p, nil
 		}
 	}
