@@ -44,7 +44,7 @@ const (
 	// for consistent quotes, and the simplex method of the library stops at a singular basis.
 	lpNudge = 1e-12
 	// lpMissed is what a row may miss its right side by.
-	lpMissed   = 1e-7
+	lpMissed = 1e-7
 	// lpAttempts is how often a singular basis is met with a nudge ten times as large: none was left in 1,500 random lists of quotes.
 	lpAttempts = 4
 )
