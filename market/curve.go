@@ -11,9 +11,10 @@ import (
 type Curve struct {
 	Name              string
 	Distortion        Distortion
-	Brokerage         float64 // fraction of the premium paid, 0 to below 1; none on reinstatement premiums (common practice, no source)
-	MinimumRateOnLine float64 // least base premium as a fraction of limit, 0 to 1
-	Fit               *Fit    // how the distortion was fitted; nil when it was set by hand
+	Brokerage         float64     // fraction of the premium paid, 0 to below 1; none on reinstatement premiums (common practice, no source)
+	MinimumRateOnLine float64     // least base premium as a fraction of limit, 0 to 1
+	Fit               *Fit        // how the distortion was fitted; nil when it was set by hand
+	Replicates        *Replicates // what other quotes would have given; nil = not drawn
 }
 
 // Validate reports every fault of the curve.
