@@ -103,6 +103,9 @@ func onKnots(d Distortion, tails []float64) []float64 {
 // Count counts the replicates.
 func (r *Replicates) Count() int { return len(r.weights) }
 
+// Curve gives the distortion of one replicate, from 0 to Count − 1.
+func (r *Replicates) Curve(i int) Distortion { return mixtureOf(r.weights[i], r.tails) }
+
 // At gives g(s) under every replicate.
 func (r *Replicates) At(s float64) []float64 {
 	parts := make([]float64, len(r.tails)+1)

@@ -1,6 +1,9 @@
 package optimize
 
-import "cedewright/portfolio/treaty"
+import (
+	"cedewright/market"
+	"cedewright/portfolio/treaty"
+)
 
 // Estimate is a simulated figure and its standard error, both in the figure's unit.
 type Estimate struct {
@@ -38,7 +41,9 @@ type TreatyFigure struct {
 	Relief                Estimate // last-in: capital without this treaty − with the whole programme, first standard, money
 	AttachmentProbability Estimate // per year; 0 for a quota share
 	ExhaustionProbability Estimate
-	PricedBy              string // "quoted", "curve NAME", "commission", "minimum rate on line of curve NAME"
+	PricedBy              string          // "quoted", "curve NAME", "commission", "minimum rate on line of curve NAME"
+	PriceError            float64         // standard error of Premium (of Commission for a quota share) that comes from the quotes, money per year; detail only
+	Reliance              market.Reliance // how far the price rests on quotes; detail only
 }
 
 // Appraisal is everything that is said about one programme. Money per year unless said otherwise. Appraise fills the errors, the
@@ -58,5 +63,9 @@ type Appraisal struct {
 	OwnFundsRatio        []Estimate // own funds / net required capital, per standard; empty when own funds are not given
 	NetResult            NetResult
 	Treaties             []TreatyFigure
+	MarginPriceError     float64   // standard error of CededMargin that comes from the quotes, beside that of the simulation; detail only
+	CostPriceError       float64   // the same for TotalCost
+	CostPriceMoves       []float64 // by how much each replicate of the curves moves the total cost, money per year; empty without replicates
+	marginMoves          []float64
 	CostInfluence        []float64 // per year: the total cost's influence values, mean 0 (detail only); differences use these
 }

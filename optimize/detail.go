@@ -138,6 +138,7 @@ func (a *Appraiser) detail(result *Appraisal, items []item, t totals, w *workspa
 	addScaled(result.CostInfluence, a.c.CostOfCapital, driving)
 	result.TotalCost.StandardError = sample.InfluenceError(result.CostInfluence)
 	a.resultErrors(&result.NetResult, losses, items, flows)
+	a.priceErrors(result, items, flows, losses)
 	return a.reliefs(result, driving, known, w)
 }
 
@@ -205,20 +206,10 @@ func (a *Appraiser) capitalInfluence(s capital.Standard, losses []float64, items
 	for i, it := range items {
 		f, placed := flows[i], it.terms.Placed()
 		if f.premium != nil {
-			slope := 1.0
-			if s.Basis == capital.Deviation {
-				slope = 0
+			if f.reinstated != nil && weights == nil {
+				weights = tailWeights(losses, s.Measure, s.Level)
 			}
-			if f.reinstated != nil {
-				if weights == nil {
-					weights = tailWeights(losses, s.Measure, s.Level)
-				}
-				slope += meanProduct(weights, f.reinstated)
-				if s.Basis == capital.Deviation {
-					slope -= it.priced.reinstated
-				}
-			}
-			addScaled(phi, placed*slope, f.premium)
+			addScaled(phi, placed*capitalSlope(s, amount, weights, f, it.priced), f.premium)
 		}
 		if f.commission != nil && s.Basis == capital.Result {
 			addScaled(phi, -placed, f.commission)
