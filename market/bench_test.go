@@ -1,7 +1,9 @@
 package market
 
 import (
+	"fmt"
 	"math"
+	"math/rand/v2"
 	"testing"
 )
 
@@ -17,10 +19,19 @@ func syntheticQuotes(n int, d Distortion) []Quote {
 	return quotes
 }
 
+// noisyQuotes are such quotes with 10 % lognormal noise.
+func noisyQuotes(n int, d Distortion, seed uint64) []Quote {
+	quotes, r := syntheticQuotes(n, d), rand.New(rand.NewPCG(seed, 3))
+	for k := range quotes {
+		quotes[k].RateOnLine *= math.Exp(0.1 * r.NormFloat64())
+	}
+	return quotes
+}
+
 func BenchmarkFitFree(b *testing.B) {
-	for _, n := range []int{15, 50} {
-		quotes := syntheticQuotes(n, Wang{0.4})
-		b.Run(map[int]string{15: "quotes=15", 50: "quotes=50"}[n], func(b *testing.B) {
+	for _, n := range []int{15, 50, 200} {
+		quotes := noisyQuotes(n, Wang{0.4}, 1)
+		b.Run(fmt.Sprintf("quotes=%d", n), func(b *testing.B) {
 			for b.Loop() {
 				if _, err := FitFree(quotes, 0, FreeOptions{}); err != nil {
 					b.Fatal(err)
@@ -30,10 +41,14 @@ func BenchmarkFitFree(b *testing.B) {
 	}
 }
 
+// BenchmarkFitMixture is one fit of the free curve with the pull given: budget 0.2 s at 200 quotes.
 func BenchmarkFitMixture(b *testing.B) {
-	quotes := syntheticQuotes(200, Wang{0.4})
+	m, err := newFreeModel(syntheticQuotes(200, Wang{0.4}), 0, FreeOptions{})
+	if err != nil {
+		b.Fatal(err)
+	}
 	for b.Loop() {
-		if _, err := fitMixture(quotes, 0, Wang{0.3}, 1, false); err != nil {
+		if _, err := m.fit(m.weights, Wang{0.3}, 1, nil); err != nil {
 			b.Fatal(err)
 		}
 	}

@@ -46,7 +46,8 @@ func (c Curve) Validate() error {
 // It is immutable and safe for concurrent use.
 type Tariff struct {
 	curve   Curve
-	weights []float64 // weights[k] = g((k+1)/N) − g(k/N) for the (k+1)-th largest value
+	years   int
+	weights []float64 // weights[k] = g((k+1)/N) − g(k/N) for the (k+1)-th largest value; of all years but in fits
 }
 
 // NewTariff prepares a valid curve for samples of that many years, at least 1.
@@ -57,21 +58,34 @@ func NewTariff(c Curve, years int) (*Tariff, error) {
 	if years < 1 {
 		return nil, fmt.Errorf("market: tariff of curve %q: %d years", c.Name, years)
 	}
-	t := &Tariff{curve: c, weights: make([]float64, years)}
+	return unchecked(c, years, years), nil
+}
+
+// unchecked prepares the weights of the largest values only, as many as are asked for, and trusts the curve: fits try many.
+func unchecked(c Curve, years, largest int) *Tariff {
+	t := &Tariff{curve: c, years: years, weights: make([]float64, largest)}
 	before := 0.0
-	for k := range years {
+	for k := range t.weights {
 		at := c.Distortion.At(float64(k+1) / float64(years))
 		t.weights[k] = at - before
 		before = at
 	}
-	return t, nil
+	return t
+}
+
+// weight gives the weight of any rank from 0.
+func (t *Tariff) weight(rank int) float64 {
+	if rank < len(t.weights) {
+		return t.weights[rank]
+	}
+	return t.curve.Distortion.At(float64(rank+1)/float64(t.years)) - t.curve.Distortion.At(float64(rank)/float64(t.years))
 }
 
 // Curve gives the curve.
 func (t *Tariff) Curve() Curve { return t.curve }
 
 // Years counts the years of the samples that it prices.
-func (t *Tariff) Years() int { return len(t.weights) }
+func (t *Tariff) Years() int { return t.years }
 
 // Price gives the distorted expectation of a sample of Years values of at least 0, of which the positive ones are given, largest first:
 // Σ r_(k)·(g(k/N) − g((k−1)/N)) (Wang 1996). Not more values may be given than there are years.

@@ -5,7 +5,6 @@ import (
 	"math"
 
 	"cedewright/portfolio/fault"
-	"cedewright/portfolio/treaty"
 )
 
 // FittedQuote is a quote and what a fit makes of it.
@@ -25,6 +24,7 @@ type Fit struct {
 	Parameter     float64 // of a family with one parameter
 	StandardError float64 // of the parameter; 0 for a single quote and for the free curve
 	Distortion    Distortion
+	Brokerage     float64 // fraction of the quoted rates, as given to the fit
 	Quotes        []FittedQuote
 	Objective     float64 // weighted sum of squared relative errors
 	InSample      float64 // root mean square relative error, weighted
@@ -68,24 +68,31 @@ func FitFamily(family string, quotes []Quote, brokerage float64) (*Fit, error) {
 	if err != nil {
 		return nil, err
 	}
-	parameter, err := fitParameter(family, used, brokerage)
+	table, err := newRateTable(family, used, brokerage)
 	if err != nil {
 		return nil, err
 	}
-	d, err := NewFamily(family, parameter)
-	if err != nil {
-		return nil, err
-	}
-	f := &Fit{Family: family, Parameter: parameter, Distortion: d}
-	f.StandardError = parameterError(family, parameter, used, brokerage)
-	f.describe(quotes, brokerage)
-	if err := f.leaveOneOut(used, func(rest []Quote, _ int) (Distortion, error) {
-		p, err := refitParameter(family, parameter, rest, brokerage)
+	weights := weightsOf(used)
+	member := func(weights []float64) (float64, Distortion, error) {
+		parameter, _, err := table.fit(weights)
 		if err != nil {
-			return nil, err
+			return 0, nil, err
 		}
-		return NewFamily(family, p)
-	}, brokerage); err != nil {
+		d, err := NewFamily(family, parameter)
+		return parameter, d, err
+	}
+	parameter, d, err := member(weights)
+	if err != nil {
+		return nil, err
+	}
+	f := &Fit{Family: family, Parameter: parameter, Distortion: d, Brokerage: brokerage}
+	f.StandardError = parameterError(family, parameter, used, brokerage)
+	f.describe(quotes)
+	err = f.leaveOneOut(func(left int) (Distortion, error) {
+		_, d, err := member(less(weights, left))
+		return d, err
+	})
+	if err != nil {
 		return nil, err
 	}
 	return f, nil
@@ -93,94 +100,27 @@ func FitFamily(family string, quotes []Quote, brokerage float64) (*Fit, error) {
 
 // objective is the weighted sum of squared relative errors.
 func objective(d Distortion, quotes []Quote, brokerage float64) float64 {
-	sum := 0.0
+	sum, p := 0.0, newPricer(d, brokerage)
 	for _, q := range quotes {
-		e := q.rate(d, brokerage)/q.RateOnLine - 1
+		e := p.rate(q)/q.RateOnLine - 1
 		sum += float64(q.Weight * e * e)
 	}
 	return sum
 }
 
-// A parameter is searched over z in 0 to 1, even in the logarithm of its distance from the neutral parameter.
-const leastDistance = 1e-4
-
-func (r ParameterRange) at(z float64) float64 {
-	return min(r.Low+(r.High-r.Low)*(math.Pow(1/leastDistance, z)-1)/(1/leastDistance-1), r.High)
-}
-
-func (r ParameterRange) place(parameter float64) float64 {
-	return math.Log1p((parameter-r.Low)/(r.High-r.Low)*(1/leastDistance-1)) / math.Log(1/leastDistance)
-}
-
-// parameterSteps is the count of grid steps on which the neighbourhood of the best parameter is looked for.
-const parameterSteps = 32
-
-// fitParameter looks on a grid and refines the best place by golden section.
+// fitParameter gives the parameter alone.
 func fitParameter(family string, quotes []Quote, brokerage float64) (float64, error) {
-	bounds, ok := parameterRanges[family]
-	if !ok {
-		_, err := NewFamily(family, 0)
+	table, err := newRateTable(family, quotes, brokerage)
+	if err != nil {
 		return 0, err
 	}
-	value := valueOf(family, bounds, quotes, brokerage)
-	best, least := 0, math.Inf(1)
-	for i := range parameterSteps + 1 {
-		if v := value(float64(i) / parameterSteps); v < least {
-			best, least = i, v
-		}
-	}
-	if math.IsInf(least, 1) {
-		return 0, fmt.Errorf("market: fit of the family %s: no parameter prices the quotes", family)
-	}
-	z := goldenSection(value, max(float64(best-1)/parameterSteps, 0), min(float64(best+1)/parameterSteps, 1))
-	if value(z) > least {
-		z = float64(best) / parameterSteps
-	}
-	return bounds.at(z), nil
+	parameter, _, err := table.fit(weightsOf(quotes))
+	return parameter, err
 }
 
-// refitParameter does the same for quotes that differ little from those to which a parameter was fitted: it looks near that parameter first,
-// and everywhere only when the best place is not inside.
-func refitParameter(family string, fitted float64, quotes []Quote, brokerage float64) (float64, error) {
-	bounds := parameterRanges[family]
-	value := valueOf(family, bounds, quotes, brokerage)
-	const near = 0.5 / parameterSteps
-	low, high := max(bounds.place(fitted)-near, 0), min(bounds.place(fitted)+near, 1)
-	z := goldenSection(value, low, high)
-	if z-low < 1e-6 && low > 0 || high-z < 1e-6 && high < 1 {
-		return fitParameter(family, quotes, brokerage)
-	}
-	return bounds.at(z), nil
-}
-
-// valueOf gives the objective as a function of z; infinite where the family has no member.
-func valueOf(family string, bounds ParameterRange, quotes []Quote, brokerage float64) func(z float64) float64 {
-	return func(z float64) float64 {
-		d, err := NewFamily(family, bounds.at(z))
-		if err != nil {
-			return math.Inf(1)
-		}
-		return objective(d, quotes, brokerage)
-	}
-}
-
-// goldenSection narrows a bracket of one minimum (Kiefer 1953) until its ends differ by 1e-9, near where rounding of values hides the rest.
-func goldenSection(f func(float64) float64, low, high float64) float64 {
-	const ratio = 0.6180339887498949
-	a, b := high-ratio*(high-low), low+ratio*(high-low)
-	fa, fb := f(a), f(b)
-	for high-low > 1e-9 {
-		if fa <= fb {
-			high, b, fb = b, a, fa
-			a = high - ratio*(high-low)
-			fa = f(a)
-		} else {
-			low, a, fa = a, b, fb
-			b = low + ratio*(high-low)
-			fb = f(b)
-		}
-	}
-	return (low + high) / 2
+// refitParameter fits again to other quotes.
+func refitParameter(family string, _ float64, quotes []Quote, brokerage float64) (float64, error) {
+	return fitParameter(family, quotes, brokerage)
 }
 
 // parameterError is the standard error of non-linear least squares: the residual variance over the curvature.
@@ -198,8 +138,9 @@ func parameterError(family string, parameter float64, quotes []Quote, brokerage 
 	}
 	width := min(parameter+step, bounds.High) - max(parameter-step, bounds.Low)
 	curvature, weights := 0.0, 0.0
+	above, below := newPricer(high, brokerage), newPricer(low, brokerage)
 	for _, q := range quotes {
-		slope := (q.rate(high, brokerage) - q.rate(low, brokerage)) / width / q.RateOnLine
+		slope := (above.rate(q) - below.rate(q)) / width / q.RateOnLine
 		curvature += float64(q.Weight * slope * slope)
 		weights += q.Weight
 	}
@@ -207,40 +148,60 @@ func parameterError(family string, parameter float64, quotes []Quote, brokerage 
 	return math.Sqrt(variance * weights / float64(len(quotes)) / curvature)
 }
 
+// fewQuotes is the count below which a fit says that it rests on few.
+const fewQuotes = 5
+
 // describe prices every quote and fills what the fit says of itself.
-func (f *Fit) describe(quotes []Quote, brokerage float64) {
+func (f *Fit) describe(quotes []Quote) {
 	f.LowestTail, f.HighestTail, f.LeaveOneOut = 1, 0, math.NaN()
-	weights := 0.0
+	fitted, mean := newPricer(f.Distortion, f.Brokerage), newPricer(ProportionalHazard{1}, f.Brokerage)
+	count, weights := 0, 0.0
 	for _, q := range quotes {
-		p := FittedQuote{Quote: q, Fitted: q.rate(f.Distortion, brokerage), LeftOut: math.NaN(), Multiple: math.NaN()}
+		p := FittedQuote{Quote: q, Fitted: fitted.rate(q), LeftOut: math.NaN(), Multiple: math.NaN()}
 		p.Residual = p.Fitted/q.RateOnLine - 1
 		if e := q.expected(); e > 0 {
 			p.Multiple = q.RateOnLine / e
-			if q.Weight > 0 && q.asked(brokerage) < e {
-				f.Warnings = append(f.Warnings, fmt.Sprintf("quote %s: rate on line %.4g after brokerage is below its expected loss %.4g: no distortion can price it", q.Name, q.asked(brokerage), e))
+			// Reinstatement premiums count: the least rate is that of the mean, not the expected loss.
+			if least := mean.rate(q); q.Weight > 0 && q.RateOnLine < least*(1-1e-12) {
+				f.Warnings = append(f.Warnings, fmt.Sprintf("quote %s: rate on line %.4g is below its expected loss with brokerage, %.4g: no distortion can price it", q.Name, q.RateOnLine, least))
 			}
+		} else if q.Weight > 0 {
+			f.Warnings = append(f.Warnings, fmt.Sprintf("quote %s: its layer is never hit on the book, so it says nothing of the curve", q.Name))
 		}
 		f.Curve = q.Curve
 		f.Quotes = append(f.Quotes, p)
 		f.Objective += float64(q.Weight * p.Residual * p.Residual)
 		weights += q.Weight
 		if q.Weight > 0 {
+			count++
 			low, high := q.tails()
 			f.LowestTail, f.HighestTail = min(f.LowestTail, low), max(f.HighestTail, high)
 		}
 	}
 	f.InSample = math.Sqrt(f.Objective / weights)
-	if n := len(quotes); n < 5 {
-		f.Warnings = append(f.Warnings, fmt.Sprintf("curve %s rests on %d quotes", f.Curve, n))
+	if count < fewQuotes {
+		f.Warnings = append(f.Warnings, fmt.Sprintf("curve %s rests on %d %s", f.Curve, count, map[bool]string{true: "quote", false: "quotes"}[count == 1]))
 	}
+	f.markBelowRange()
 }
 
-// asked gives what the market asks for the loss, as a fraction of the limit, after brokerage.
-func (q Quote) asked(brokerage float64) float64 {
-	if q.Own() && q.Terms.Kind == treaty.QuotaShare {
-		return q.RateOnLine - brokerage
+// markBelowRange marks the quotes of weight that alone speak for the smallest probabilities.
+func (f *Fit) markBelowRange() {
+	lowest, second, at := math.Inf(1), math.Inf(1), -1
+	for k, q := range f.Quotes {
+		if q.Weight == 0 {
+			continue
+		}
+		switch low, _ := q.tails(); {
+		case low < lowest:
+			lowest, second, at = low, lowest, k
+		case low < second:
+			second = low
+		}
 	}
-	return q.RateOnLine * (1 - brokerage)
+	if at >= 0 && lowest < second {
+		f.Quotes[at].BelowRange = true
+	}
 }
 
 // tails gives the range of probabilities that a quote speaks for.
@@ -258,28 +219,24 @@ func (q Quote) tails() (low, high float64) {
 	return float64(full) / float64(q.Years), float64(len(q.Recoveries)) / float64(q.Years)
 }
 
-// without gives the quotes less one.
-func without(quotes []Quote, i int) []Quote {
-	return append(append(make([]Quote, 0, len(quotes)), quotes[:i]...), quotes[i+1:]...)
-}
-
-// leaveOneOut prices each quote of weight by the fit to the others.
-func (f *Fit) leaveOneOut(used []Quote, fit func(rest []Quote, left int) (Distortion, error), brokerage float64) error {
+// leaveOneOut prices each quote of weight by the fit to the others; left counts the quotes of weight.
+func (f *Fit) leaveOneOut(fit func(left int) (Distortion, error)) error {
+	var used []*FittedQuote
+	for k := range f.Quotes {
+		if f.Quotes[k].Weight > 0 {
+			used = append(used, &f.Quotes[k])
+		}
+	}
 	if len(used) < 3 {
 		return nil
 	}
-	sum, weights, i := 0.0, 0.0, 0
-	for k := range f.Quotes {
-		if f.Quotes[k].Weight == 0 {
-			continue
-		}
-		d, err := fit(without(used, i), i)
-		i++
+	sum, weights := 0.0, 0.0
+	for left, q := range used {
+		d, err := fit(left)
 		if err != nil {
 			return err
 		}
-		q := &f.Quotes[k]
-		q.LeftOut = q.rate(d, brokerage)
+		q.LeftOut = q.rate(d, f.Brokerage)
 		e := q.LeftOut/q.RateOnLine - 1
 		sum += float64(q.Weight * e * e)
 		weights += q.Weight

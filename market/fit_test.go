@@ -86,7 +86,7 @@ func TestOracleLeastSquares(t *testing.T) {
 			}
 			rows = append(rows, row)
 		}
-		x, err := solveMixture(rows, len(o.P))
+		x, err := solveMixture(rows, len(o.P), nil)
 		if err != nil {
 			t.Fatal(err)
 		}

@@ -5,8 +5,6 @@ import (
 	"slices"
 
 	"cedewright/portfolio/treaty"
-
-	"gonum.org/v1/gonum/mat"
 )
 
 // Settings of the free curve.
@@ -42,21 +40,18 @@ func FitFree(quotes []Quote, brokerage float64, o FreeOptions) (*Fit, error) {
 	if o.Absolute && len(used) > mostConsistent {
 		return nil, ErrTooManyQuotes
 	}
-	parameters := map[string]float64{}
-	anchor := func(quotes []Quote) (string, Distortion, error) {
-		if o.Toward != nil {
-			return o.Name, o.Toward, nil
-		}
-		return betterFamily(quotes, brokerage, parameters)
+	m, err := newFreeModel(used, brokerage, o)
+	if err != nil {
+		return nil, err
 	}
-	toward, whole, err := anchor(used)
+	toward, anchor, err := m.anchor(m.weights)
 	if err != nil {
 		return nil, err
 	}
 	anchors := make([]Distortion, len(used)) // of the fits that leave one quote out
 	if len(used) >= 3 {
 		for i := range used {
-			if _, anchors[i], err = anchor(without(used, i)); err != nil {
+			if _, anchors[i], err = m.anchor(less(m.weights, i)); err != nil {
 				return nil, err
 			}
 		}
@@ -66,15 +61,19 @@ func FitFree(quotes []Quote, brokerage float64, o FreeOptions) (*Fit, error) {
 		if pull == 0 && len(used) < 3 {
 			continue // nothing would hold the curve where no quote speaks
 		}
-		d, err := fitMixture(used, brokerage, whole, pull, o.Absolute)
+		x, err := m.fit(m.weights, anchor, pull, nil)
 		if err != nil {
 			return nil, err
 		}
-		f := &Fit{Family: FamilyFree, Distortion: d, Pull: pull, Toward: toward, anchor: whole, absolute: o.Absolute}
-		f.describe(quotes, brokerage)
-		if err := f.leaveOneOut(used, func(rest []Quote, left int) (Distortion, error) {
-			return fitMixture(rest, brokerage, anchors[left], pull, o.Absolute)
-		}, brokerage); err != nil {
+		f := &Fit{Family: FamilyFree, Distortion: mixtureOf(x, m.tails), Brokerage: brokerage, Pull: pull, Toward: toward, anchor: anchor, absolute: o.Absolute}
+		f.describe(quotes)
+		if err := f.leaveOneOut(func(left int) (Distortion, error) {
+			y, err := m.fit(less(m.weights, left), anchors[left], pull, x)
+			if err != nil {
+				return nil, err
+			}
+			return mixtureOf(y, m.tails), nil
+		}); err != nil {
 			return nil, err
 		}
 		if best.Distortion == nil || f.LeaveOneOut < best.LeaveOneOut {
@@ -84,94 +83,140 @@ func FitFree(quotes []Quote, brokerage float64, o FreeOptions) (*Fit, error) {
 	return best, nil
 }
 
-// betterFamily fits the two families that resemble real prices and gives the one with the smaller objective. It starts from the parameters
-// that it finds in the map, if any, and else notes there what it fitted.
-func betterFamily(quotes []Quote, brokerage float64, parameters map[string]float64) (string, Distortion, error) {
-	var name string
-	var best Distortion
-	least := math.Inf(1)
-	for _, family := range []string{FamilyProportionalHazard, FamilyWang} {
-		start, ok := parameters[family]
-		var p float64
-		var err error
-		if ok {
-			p, err = refitParameter(family, start, quotes, brokerage)
-		} else {
-			p, err = fitParameter(family, quotes, brokerage)
-			parameters[family] = p
-		}
-		if err != nil {
-			return "", nil, err
-		}
-		d, err := NewFamily(family, p)
-		if err != nil {
-			return "", nil, err
-		}
-		if v := objective(d, quotes, brokerage); v < least {
-			name, best, least = family, d, v
-		}
+// fitMixture fits the free curve with a given pull.
+func fitMixture(quotes []Quote, brokerage float64, anchor Distortion, pull float64, absolute bool) (Mixture, error) {
+	m, err := newFreeModel(quotes, brokerage, FreeOptions{Absolute: absolute, Toward: anchor})
+	if err != nil {
+		return Mixture{}, err
 	}
-	return name, best, nil
+	x, err := m.fit(m.weights, anchor, pull, nil)
+	if err != nil {
+		return Mixture{}, err
+	}
+	return mixtureOf(x, m.tails), nil
 }
 
-// fitMixture solves the least squares over mixtures: the prices of the parts are columns, the quotes rows, and the weights are at least 0 and add up to
-// 1. Rows are made homogeneous by taking the quote from every column, after which one plain non-negative least squares with the row Σw = 1
-// appended gives the optimum up to a factor (exact, not a penalty). Bids and offers are rows with a slack of at least 0 and a large weight.
-func fitMixture(quotes []Quote, brokerage float64, anchor Distortion, pull float64, absolute bool) (Mixture, error) {
-	tails := knots(quotes)
-	var rows [][]float64 // relative errors, homogeneous
-	var weights []float64
+// freeModel is what does not change between fits of the free curve to the same quotes with other weights.
+type freeModel struct {
+	quotes  []Quote
+	weights []float64
+	options FreeOptions
+	tails   []float64   // where the curve may have kinks
+	rows    [][]float64 // of each quote: relative errors of the parts of a mixture: the supremum and the tail values at risk at the knots
+	limits  []limitRow
+	tables  []*rateTable // of the families towards which the curve may be pulled
+}
+
+// newFreeModel prices the dictionary and the two families that resemble real prices.
+func newFreeModel(quotes []Quote, brokerage float64, o FreeOptions) (*freeModel, error) {
+	m := &freeModel{quotes: quotes, weights: weightsOf(quotes), options: o, tails: knots(quotes)}
 	for _, q := range quotes {
-		row, target := q.columns(tails, brokerage)
-		for j := range row {
-			row[j] = row[j]/target - 1
+		row, target := q.columns(m.tails, brokerage)
+		for k := range row {
+			row[k] = row[k]/target - 1
 		}
-		rows, weights = append(rows, row), append(weights, q.Weight)
+		m.rows = append(m.rows, row)
+	}
+	m.limits = bidAndOfferRows(quotes, m.rows)
+	if o.Toward != nil {
+		return m, nil
+	}
+	for _, family := range []string{FamilyProportionalHazard, FamilyWang} {
+		table, err := newRateTable(family, quotes, brokerage)
+		if err != nil {
+			return nil, err
+		}
+		m.tables = append(m.tables, table)
+	}
+	return m, nil
+}
+
+// anchor gives what the curve is pulled towards: the distortion of the options, else the better of the two families at its best parameter.
+func (m *freeModel) anchor(weights []float64) (name string, d Distortion, err error) {
+	if m.options.Toward != nil {
+		return m.options.Name, m.options.Toward, nil
+	}
+	best := math.Inf(1)
+	for _, table := range m.tables {
+		parameter, least, err := table.fit(weights)
+		if err != nil {
+			return "", nil, err
+		}
+		if least < best {
+			best, name = least, table.family
+			if d, err = NewFamily(table.family, parameter); err != nil {
+				return "", nil, err
+			}
+		}
+	}
+	return name, d, nil
+}
+
+// fit solves the least squares over mixtures: the prices of the parts are columns, the quotes rows, and the weights of the mixture are at least 0 and
+// add up to 1. Rows are homogeneous, the quote being taken from every column, so that one plain non-negative least squares with the row Σw = 1
+// appended gives the optimum up to a factor (exact, not a penalty). Bids and offers are rows with a slack of at least 0 and a large weight.
+// Quotes of weight 0 do not count. The solution, slacks last, may start from that to other weights.
+func (m *freeModel) fit(weights []float64, anchor Distortion, pull float64, start []float64) ([]float64, error) {
+	var rows, limits [][]float64
+	var counts []float64
+	for j, row := range m.rows {
+		if weights[j] > 0 {
+			rows, counts = append(rows, row), append(counts, weights[j])
+		}
 	}
 	for i := 0; pull > 0 && i < pseudoQuotes; i++ {
 		s := lowestPseudo * math.Pow(highestPseudo/lowestPseudo, float64(i)/(pseudoQuotes-1))
 		at := anchor.At(s)
 		row := []float64{1/at - 1}
-		for _, t := range tails {
+		for _, t := range m.tails {
 			row = append(row, min(s/t, 1)/at-1)
 		}
-		rows, weights = append(rows, row), append(weights, pull/pseudoQuotes)
+		rows, counts = append(rows, row), append(counts, pull/pseudoQuotes)
 	}
-	limits := bidAndOfferRows(quotes, rows)
-	if absolute {
-		x, err := leastAbsolute(rows, weights, limits)
-		return mixtureOf(x, tails), err
+	columns := len(m.tails) + 1
+	if m.options.Absolute {
+		for _, l := range m.limits {
+			if weights[l.quote] > 0 {
+				limits = append(limits, l.row)
+			}
+		}
+		return leastAbsolute(rows, counts, limits)
 	}
-	columns := len(tails) + 1
+	wide := make([][]float64, 0, len(rows)+len(m.limits))
 	for i, row := range rows {
-		for j := range row {
-			row[j] *= math.Sqrt(weights[i])
+		wide = append(wide, scaled(row, math.Sqrt(counts[i]), columns+len(m.limits)))
+	}
+	for i, l := range m.limits {
+		if weights[l.quote] > 0 {
+			row := scaled(l.row, limitWeight, columns+len(m.limits))
+			row[columns+i] = -limitWeight // row·w ≥ 0
+			wide = append(wide, row)
 		}
 	}
-	for i, row := range limits {
-		wide := make([]float64, columns+len(limits))
-		for j, v := range row {
-			wide[j] = v * limitWeight
-		}
-		wide[columns+i] = -limitWeight // row·w ≥ 0
-		rows = append(rows, wide)
+	return solveMixture(wide, columns, start)
+}
+
+// scaled gives the entries times a factor, followed by zeros.
+func scaled(row []float64, factor float64, columns int) []float64 {
+	out := make([]float64, columns)
+	for k, v := range row {
+		out[k] = v * factor
 	}
-	for i, row := range rows {
-		rows[i] = append(row, make([]float64, columns+len(limits)-len(row))...)
-	}
-	x, err := solveMixture(rows, columns)
-	if err != nil {
-		return Mixture{}, err
-	}
-	return mixtureOf(x, tails), nil
+	return out
 }
 
 // limitWeight makes a bid or an offer all but a hard constraint: it is missed by about 1e-8 of the rate.
 const limitWeight = 1e4
 
-// bidAndOfferRows gives rows that must not be negative: price over bid less 1, and 1 less price over offer, from rows of price over quote less 1.
-func bidAndOfferRows(quotes []Quote, rows [][]float64) [][]float64 {
-	var limits [][]float64
+// limitRow is the bid or the offer of a quote: row·w must not be negative.
+type limitRow struct {
+	quote int
+	row   []float64
+}
+
+// bidAndOfferRows gives price over bid less 1, and 1 less price over offer, from rows of price over quote less 1; in units of the quote.
+func bidAndOfferRows(quotes []Quote, rows [][]float64) []limitRow {
+	var limits []limitRow
 	for j, q := range quotes {
 		for _, limit := range []struct{ rate, sign float64 }{{q.Bid, 1}, {q.Offer, -1}} {
 			if limit.rate == 0 {
@@ -181,7 +226,7 @@ func bidAndOfferRows(quotes []Quote, rows [][]float64) [][]float64 {
 			for k, v := range rows[j] {
 				row[k] = limit.sign * (1 + v - limit.rate/q.RateOnLine)
 			}
-			limits = append(limits, row)
+			limits = append(limits, limitRow{j, row})
 		}
 	}
 	return limits
@@ -213,30 +258,22 @@ func leastAbsolute(rows [][]float64, weights []float64, limits [][]float64) ([]f
 
 // solveMixture gives the weights, at least 0, in sum 1, that minimise the sum of squares of homogeneous rows. The first so many columns are weights, the
 // rest slacks.
-func solveMixture(rows [][]float64, weights int) ([]float64, error) {
-	columns := len(rows[0])
-	a := mat.NewDense(len(rows)+1, columns, nil)
-	for i, row := range rows {
-		a.SetRow(i, row)
+func solveMixture(rows [][]float64, weights int, start []float64) ([]float64, error) {
+	ones := make([]float64, len(rows[0]))
+	for k := range weights {
+		ones[k] = 1
 	}
-	for j := range weights {
-		a.Set(len(rows), j, 1)
-	}
-	b := make([]float64, len(rows)+1)
-	b[len(rows)] = 1
-	x, err := nonNegativeLeastSquares(a, b)
+	right := make([]float64, len(rows)+1)
+	right[len(rows)] = 1
+	x, err := newLeastSquares(append(rows[:len(rows):len(rows)], ones), right).solve(start)
 	if err != nil {
 		return nil, err
 	}
-	x = x[:weights]
 	total := 0.0
-	for _, w := range x {
+	for _, w := range x[:weights] {
 		total += w
 	}
-	for j := range x {
-		x[j] /= total
-	}
-	return x, nil
+	return scaled(x, 1/total, len(x)), nil
 }
 
 // mixtureOf drops weights of 0.

@@ -39,8 +39,8 @@ func (t *Tariff) BasePremium(terms treaty.Treaty, descending []float64) (Premium
 	if terms.Premium.Given {
 		return Premium{Base: terms.Premium.Value, By: ByQuote, Basis: "quoted"}, nil
 	}
-	if len(descending) > len(t.weights) {
-		return Premium{}, fmt.Errorf("market: base premium: %d recoveries for %d years", len(descending), len(t.weights))
+	if len(descending) > t.years {
+		return Premium{}, fmt.Errorf("market: base premium: %d recoveries for %d years", len(descending), t.years)
 	}
 	p := Premium{By: ByCurve, Basis: "curve " + t.curve.Name, DistortedRecovery: t.Price(descending)}
 	keep := 1 - t.curve.Brokerage
@@ -82,7 +82,7 @@ const rootTolerance = 1e-12
 
 // solvePremium finds the root of P·keep = ρ_g(R − P·F) by Newton's method from a start at or below it.
 func (t *Tariff) solvePremium(recoveries, reinstated []float64, keep, start float64) (float64, error) {
-	n, years := len(recoveries), len(t.weights)
+	n := len(recoveries)
 	order := make([]int, n)
 	net := make([]float64, n)
 	p := start
@@ -110,9 +110,10 @@ func (t *Tariff) solvePremium(recoveries, reinstated []float64, keep, start floa
 			slope -= float64(reinstated[i] * t.weights[k])
 			k++
 		}
-		for rank, j := years-1, n-1; j >= k; rank, j = rank-1, j-1 {
-			value += float64(net[order[j]] * t.weights[rank])
-			slope -= float64(reinstated[order[j]] * t.weights[rank])
+		for rank, j := t.years-1, n-1; j >= k; rank, j = rank-1, j-1 {
+			weight := t.weight(rank)
+			value += float64(net[order[j]] * weight)
+			slope -= float64(reinstated[order[j]] * weight)
 		}
 		step := (value - float64(p*keep)) / -slope
 		if !finite(step) {

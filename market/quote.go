@@ -89,26 +89,6 @@ func (q Quote) expected() float64 {
 	return sum / float64(q.Years) / q.Terms.Limit
 }
 
-// rate gives the rate on line that a curve asks for the quoted layer, brokerage included, no minimum.
-func (q Quote) rate(d Distortion, brokerage float64) float64 {
-	if !q.Own() {
-		return distortedShape(d, q.Attachment, q.Exhaustion, q.ExpectedLoss) / (1 - brokerage)
-	}
-	t, err := NewTariff(Curve{Name: q.Curve, Distortion: d, Brokerage: brokerage}, q.Years)
-	if err != nil {
-		return math.NaN()
-	}
-	terms := q.quoted()
-	if terms.Kind == treaty.QuotaShare {
-		return t.Price(q.Recoveries)/terms.Limit + brokerage
-	}
-	p, err := t.BasePremium(terms, q.Recoveries)
-	if err != nil {
-		return math.NaN()
-	}
-	return p.Base / terms.Limit
-}
-
 // A market-wide layer's loss has survival probabilities that fall from attachment a to exhaustion e with mean m; they are taken along the
 // power curve S(u) = e + (a−e)·(1−u)^c, 0 ≤ u ≤ 1, with the c that gives the mean, c = (a−e)/(m−e) − 1.
 func shapePower(a, e, m float64) float64 { return (a-e)/(m-e) - 1 }
