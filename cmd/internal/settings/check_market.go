@@ -21,6 +21,13 @@ func (c *checker) market() {
 	for i, q := range c.s.Market.OwnQuotes {
 		c.ownQuote(fmt.Sprintf("market.own_quotes[%d]", i), q)
 	}
+	c.names("market.scenarios", len(c.s.Market.Scenarios), func(i int) string { return c.s.Market.Scenarios[i].Name })
+	for i, s := range c.s.Market.Scenarios {
+		for _, f := range fault.All(s.Turn().Validate(c.curves.list)) {
+			f.Key = fmt.Sprintf("market.scenarios[%d].%s", i, f.Key)
+			c.take(*f)
+		}
+	}
 }
 
 // curve checks one curve; own tells whether a quote for a layer of the cedant's own speaks for it.
@@ -29,7 +36,26 @@ func (c *checker) curve(key string, curve Curve, own bool) {
 	if m := curve.MinimumRateOnLine; m != nil {
 		c.fraction(key+".minimum_rate_on_line", *m)
 	}
+	if curve.HalfLife != nil {
+		c.within(key+".half_life", float64(*curve.HalfLife), 0, math.Inf(1), true, false, "a number of years above 0")
+		if c.s.Market.AsOf == nil {
+			c.add(key+".half_life", "given without market.as_of", "the day of the study, from which ages count")
+		}
+	}
+	if curve.Error != "" {
+		c.word(key+".error", "kind of error", curve.Error, ErrorNames())
+	}
+	if curve.Loading != nil {
+		c.within(key+".loading", float64(*curve.Loading), 0, math.Inf(1), false, false, "a fraction of at least 0")
+	}
 	fitted := curve.Quotes != "" || own && !c.broken("market.own_quotes")
+	if curve.Like != "" {
+		c.like(key, curve, fitted)
+		return
+	}
+	if curve.Loading != nil {
+		c.add(key+".loading", "given without like", "the curve to lean on")
+	}
 	switch {
 	case curve.Family != "" && (fitted || curve.Fit != ""):
 		c.add(key, "both a family with its parameter and a fit to quotes", "family and parameter, or quotes and fit")
@@ -43,6 +69,25 @@ func (c *checker) curve(key string, curve Curve, own bool) {
 		c.word(key+".fit", "way to fit", fitName(curve.Fit), FitNames())
 	}
 }
+
+// like checks a curve that leans on another: its own quotes, if any, are fitted freely, and where they are silent it is the other, loaded.
+func (c *checker) like(key string, curve Curve, fitted bool) {
+	c.known(key+".like", "curve", curve.Like, c.curves)
+	if curve.Family != "" || curve.Parameter != nil {
+		c.add(key, "both a family and a curve to lean on", "one of the two")
+	}
+	if fitted && curve.Fit != "" && curve.Fit != market.FamilyFree {
+		c.add(key+".fit", fmt.Sprintf("%q, but the curve leans on another", curve.Fit), "free, or no fit")
+	}
+	for _, other := range c.s.Market.Curves {
+		if other.Name == curve.Like && other.Like != "" {
+			c.add(key+".like", fmt.Sprintf("%q, which leans on another itself", curve.Like), "a curve with quotes or a family of its own")
+		}
+	}
+}
+
+// ErrorNames lists what a fit can minimise.
+func ErrorNames() []string { return []string{"relative", "absolute"} }
 
 func (c *checker) family(key string, curve Curve) {
 	if curve.Parameter == nil {
@@ -64,18 +109,33 @@ func (c *checker) ownQuote(key string, q OwnQuote) {
 	}
 	c.known(key+".curve", "curve", q.Curve, c.curves)
 	c.subject(key, q.Treaty)
-	c.within(key+".rate_on_line", float64(q.RateOnLine), 0, 1, true, false, "a fraction above 0 and at most 1: base premium over limit")
 	if q.Weight != nil {
 		c.within(key+".weight", float64(*q.Weight), 0, math.Inf(1), false, false, "a number of at least 0")
 	}
 	if q.Limit != nil && q.Limit.Unlimited {
 		c.add(key+".limit", "unlimited", "a limit, to which the rate on line refers")
 	}
-	if q.Kind == treaty.QuotaShare.String() {
-		c.add(key+".kind", q.Kind, "an excess cover: a quota share has no rate on line")
+	switch {
+	case q.Kind == treaty.QuotaShare.String():
+		if q.Commission == nil {
+			c.add(key+".commission", "the key is missing", "the commission that was quoted")
+		}
+		if q.RateOnLine != nil || q.Bid != nil || q.Offer != nil {
+			c.add(key, "a rate on line for a quota share", "its commission")
+		}
+	case q.RateOnLine == nil:
+		c.add(key+".rate_on_line", "the key is missing", "")
+	default:
+		c.within(key+".rate_on_line", float64(*q.RateOnLine), 0, 1, true, false, "a fraction above 0 and at most 1: base premium over limit")
 	}
 	if q.Premium != nil {
 		c.add(key+".premium", "given beside rate_on_line", "rate_on_line alone")
+	}
+	if q.Brokerage != "" {
+		c.word(key+".brokerage", "word for it", q.Brokerage, []string{"included", "excluded"})
+	}
+	if q.Line != "" {
+		c.word(key+".line", "kind of line", q.Line, []string{"lead", "following"})
 	}
 	if len(q.After) > 0 {
 		c.add(key+".after", "given for a quote", "no treaty: the quoted layer is looked at on the gross losses")

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 
+	"cedewright/market"
 	"cedewright/optimize"
 	"cedewright/portfolio/capital"
 	"cedewright/portfolio/fault"
@@ -332,4 +333,46 @@ func (t Tower) space() optimize.Tower {
 		tower.Template.EventLimit = float64(*t.EventLimit)
 	}
 	return tower
+}
+
+// Turn gives the scenario that the keys describe.
+func (s Scenario) Turn() market.Scenario {
+	turn := market.Scenario{Name: s.Name, Curves: s.Curves}
+	for _, f := range []struct {
+		to   *float64
+		from *Fraction
+	}{{&turn.RateChange, s.RateChange}, {&turn.From, s.From}, {&turn.To, s.To}, {&turn.MinimumRateOnLine, s.MinimumRateOnLine}} {
+		if f.from != nil {
+			*f.to = float64(*f.from)
+		}
+	}
+	if s.From != nil && s.To == nil {
+		turn.To = 1
+	}
+	return turn
+}
+
+// Quote gives what the keys say of a quote as it came in, its place and recoveries aside.
+func (q OwnQuote) Quote() market.Quote {
+	quote := market.Quote{Curve: q.Curve, Name: q.Name, Weight: 1}
+	for _, f := range []struct {
+		to   *float64
+		from *Fraction
+	}{{&quote.RateOnLine, q.RateOnLine}, {&quote.Bid, q.Bid}, {&quote.Offer, q.Offer}, {&quote.RateChange, q.RateChange}} {
+		if f.from != nil {
+			*f.to = float64(*f.from)
+		}
+	}
+	if q.Commission != nil {
+		quote.RateOnLine = 1 - float64(*q.Commission)
+	}
+	if q.Weight != nil {
+		quote.Weight = float64(*q.Weight)
+	}
+	if q.Date != nil {
+		quote.Date = q.Date.Time
+	}
+	quote.BeforeBrokerage = q.Brokerage == "excluded"
+	quote.Following = q.Line == "following"
+	return quote
 }

@@ -5,6 +5,7 @@ import (
 	"fmt"
 	"strconv"
 	"strings"
+	"time"
 
 	"cedewright/portfolio/sample"
 )
@@ -145,4 +146,16 @@ func (a *Amount) parse(text string) error {
 		return nil
 	}
 	return fmt.Errorf("money or a fraction, such as 55m or 160%%")
+}
+
+// Date is a day, such as 2026-11-30.
+type Date struct{ time.Time }
+
+func (d *Date) parse(text string) error {
+	day, err := time.Parse(time.DateOnly, text)
+	if err != nil {
+		return errors.New("a date, such as 2026-11-30")
+	}
+	d.Time = day
+	return nil
 }

@@ -123,7 +123,9 @@ type Correlation struct {
 // Market is the section of prices.
 type Market struct {
 	Curves    []Curve    `key:"curves"`
+	AsOf      *Date      `key:"as_of"`
 	OwnQuotes []OwnQuote `key:"own_quotes"`
+	Scenarios []Scenario `key:"scenarios"`
 }
 
 // Curve is a market curve: fitted to quotes, or a family with its parameter.
@@ -135,13 +137,33 @@ type Curve struct {
 	Parameter         *Number   `key:"parameter"`
 	Brokerage         Fraction  `key:"brokerage"`
 	MinimumRateOnLine *Fraction `key:"minimum_rate_on_line"`
+	HalfLife          *Number   `key:"half_life"`
+	Error             string    `key:"error"`
+	Like              string    `key:"like"`
+	Loading           *Fraction `key:"loading"`
 }
 
-// OwnQuote is a quote for a layer of the cedant's own.
+// OwnQuote is a quote for a layer of the cedant's own, by its rate on line, or for a quota share, by its commission.
 type OwnQuote struct {
 	Treaty
-	RateOnLine Fraction `key:"rate_on_line,required"`
-	Weight     *Number  `key:"weight"`
+	RateOnLine *Fraction `key:"rate_on_line"`
+	Bid        *Fraction `key:"bid"`
+	Offer      *Fraction `key:"offer"`
+	Weight     *Number   `key:"weight"`
+	Date       *Date     `key:"date"`
+	RateChange *Fraction `key:"rate_change"`
+	Brokerage  string    `key:"brokerage"`
+	Line       string    `key:"line"`
+}
+
+// Scenario is a turn of the market.
+type Scenario struct {
+	Name              string    `key:"name,required"`
+	Curves            []string  `key:"curves"`
+	RateChange        *Fraction `key:"rate_change"`
+	From              *Fraction `key:"from"`
+	To                *Fraction `key:"to"`
+	MinimumRateOnLine *Fraction `key:"minimum_rate_on_line"`
 }
 
 // Programme is a list of treaties.

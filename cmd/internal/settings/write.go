@@ -7,6 +7,7 @@ import (
 	"reflect"
 	"strconv"
 	"strings"
+	"time"
 
 	"cedewright/portfolio/sample"
 
@@ -143,6 +144,8 @@ func written(x any) (text string, ok bool, err error) {
 		text = plain(float64(x))
 	case Count:
 		text = strconv.Itoa(int(x))
+	case Date:
+		text = x.Format(time.DateOnly)
 	case Seed:
 		text = strconv.FormatUint(uint64(x), 10)
 	case Level:
