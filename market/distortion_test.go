@@ -253,6 +253,35 @@ func TestPriceByProperty(t *testing.T) {
 	})
 }
 
+// TestDearerCurve: of two curves of which one nowhere lies below the other, it prices no sample lower.
+func TestDearerCurve(t *testing.T) {
+	rapid.Check(t, func(t *rapid.T) {
+		family := rapid.SampledFrom(FamilyNames()).Draw(t, "family")
+		bounds := parameterRanges[family]
+		low := rapid.Float64Range(0, 0.9).Draw(t, "low") // even in z, where every family rises
+		high := rapid.Float64Range(low, 1).Draw(t, "high")
+		n := rapid.IntRange(1, 50).Draw(t, "n")
+		sample := rapid.SliceOfN(rapid.Float64Range(0, 1e9), 0, n).Draw(t, "sample")
+		slices.Sort(sample)
+		slices.Reverse(sample)
+		prices := [2]float64{}
+		for i, z := range []float64{low, high} {
+			d, err := NewFamily(family, bounds.at(z))
+			if err != nil {
+				t.Fatal(err)
+			}
+			tariff, err := NewTariff(Curve{Name: "c", Distortion: d}, n)
+			if err != nil {
+				t.Fatal(err)
+			}
+			prices[i] = tariff.Price(sample)
+		}
+		if prices[0] > prices[1]*(1+1e-12) { // rounding of 50 products
+			t.Fatalf("%s: %v at %v, %v at %v", family, prices[0], bounds.at(low), prices[1], bounds.at(high))
+		}
+	})
+}
+
 func ExampleCheck() {
 	fmt.Println(Check(Wang{0.4}))
 	// Output: <nil>

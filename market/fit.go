@@ -35,8 +35,7 @@ type Fit struct {
 	HighestTail   float64
 	Warnings      []string
 
-	anchor   Distortion // of a free curve's pull
-	absolute bool       // the free curve minimises absolute errors
+	options FreeOptions // of a free curve
 }
 
 // checkQuotes gives every fault of the quotes, and those of weight above 0.
@@ -116,11 +115,6 @@ func fitParameter(family string, quotes []Quote, brokerage float64) (float64, er
 	}
 	parameter, _, err := table.fit(weightsOf(quotes))
 	return parameter, err
-}
-
-// refitParameter fits again to other quotes.
-func refitParameter(family string, _ float64, quotes []Quote, brokerage float64) (float64, error) {
-	return fitParameter(family, quotes, brokerage)
 }
 
 // parameterError is the standard error of non-linear least squares: the residual variance over the curvature.

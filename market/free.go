@@ -65,7 +65,7 @@ func FitFree(quotes []Quote, brokerage float64, o FreeOptions) (*Fit, error) {
 		if err != nil {
 			return nil, err
 		}
-		f := &Fit{Family: FamilyFree, Distortion: mixtureOf(x, m.tails), Brokerage: brokerage, Pull: pull, Toward: toward, anchor: anchor, absolute: o.Absolute}
+		f := &Fit{Family: FamilyFree, Distortion: mixtureOf(x, m.tails), Brokerage: brokerage, Pull: pull, Toward: toward, options: o}
 		f.describe(quotes)
 		if err := f.leaveOneOut(func(left int) (Distortion, error) {
 			y, err := m.fit(less(m.weights, left), anchors[left], pull, x)
@@ -81,19 +81,6 @@ func FitFree(quotes []Quote, brokerage float64, o FreeOptions) (*Fit, error) {
 		}
 	}
 	return best, nil
-}
-
-// fitMixture fits the free curve with a given pull.
-func fitMixture(quotes []Quote, brokerage float64, anchor Distortion, pull float64, absolute bool) (Mixture, error) {
-	m, err := newFreeModel(quotes, brokerage, FreeOptions{Absolute: absolute, Toward: anchor})
-	if err != nil {
-		return Mixture{}, err
-	}
-	x, err := m.fit(m.weights, anchor, pull, nil)
-	if err != nil {
-		return Mixture{}, err
-	}
-	return mixtureOf(x, m.tails), nil
 }
 
 // freeModel is what does not change between fits of the free curve to the same quotes with other weights.

@@ -1,12 +1,15 @@
 package market
 
 import (
+	"cmp"
 	"fmt"
 	"math"
 	"math/rand/v2"
 	"slices"
 
 	"cedewright/portfolio/treaty"
+
+	"gonum.org/v1/gonum/stat"
 )
 
 // Replicates are the curves that would have been fitted to other quotes of the same kind: each is fitted to quotes drawn, with replacement, from those in
@@ -39,6 +42,11 @@ func Resample(c Curve, count int, seed uint64) (*Replicates, error) {
 	if len(used) < fewestForReplicates {
 		return nil, nil
 	}
+	inCanonicalOrder(used)
+	refit, err := c.Fit.refitter(used)
+	if err != nil {
+		return nil, err
+	}
 	r := &Replicates{brokerage: c.Brokerage, minimum: c.MinimumRateOnLine, tails: knots(used)}
 	r.fitted = onKnots(c.Distortion, r.tails)
 	name := uint64(14695981039346656037) // FNV-1a of the name, so that curves draw apart
@@ -47,18 +55,12 @@ func Resample(c Curve, count int, seed uint64) (*Replicates, error) {
 	}
 	random := rand.New(rand.NewPCG(seed, name))
 	for range count {
-		times := make([]float64, len(used))
+		weights := make([]float64, len(used))
 		for range used {
-			times[random.IntN(len(used))]++
+			j := random.IntN(len(used))
+			weights[j] += used[j].Weight
 		}
-		var drawn []Quote
-		for i, q := range used {
-			if times[i] > 0 {
-				q.Weight *= times[i]
-				drawn = append(drawn, q)
-			}
-		}
-		d, err := c.Fit.again(drawn, c.Brokerage)
+		d, err := refit(weights)
 		if err != nil {
 			return nil, fmt.Errorf("market: resampling of curve %q: %w", c.Name, err)
 		}
@@ -67,16 +69,45 @@ func Resample(c Curve, count int, seed uint64) (*Replicates, error) {
 	return r, nil
 }
 
-// again fits the same kind of curve to other quotes.
-func (f *Fit) again(quotes []Quote, brokerage float64) (Distortion, error) {
+// inCanonicalOrder sorts quotes by what they say, so that the order in which they were given draws no other replicates.
+func inCanonicalOrder(quotes []Quote) {
+	slices.SortStableFunc(quotes, func(a, b Quote) int {
+		return cmp.Or(cmp.Compare(a.Attachment, b.Attachment), cmp.Compare(a.Exhaustion, b.Exhaustion), cmp.Compare(a.ExpectedLoss, b.ExpectedLoss),
+			cmp.Compare(a.RateOnLine, b.RateOnLine), cmp.Compare(a.Weight, b.Weight), cmp.Compare(a.Name, b.Name))
+	})
+}
+
+// refitter gives a function that fits the same kind of curve to the same quotes with other weights; the free curve keeps its pull, but what it is
+// pulled towards is fitted again.
+func (f *Fit) refitter(quotes []Quote) (func(weights []float64) (Distortion, error), error) {
 	if f.Family != FamilyFree {
-		p, err := refitParameter(f.Family, f.Parameter, quotes, brokerage)
+		table, err := newRateTable(f.Family, quotes, f.Brokerage)
 		if err != nil {
 			return nil, err
 		}
-		return NewFamily(f.Family, p)
+		return func(weights []float64) (Distortion, error) {
+			p, _, err := table.fit(weights)
+			if err != nil {
+				return nil, err
+			}
+			return NewFamily(f.Family, p)
+		}, nil
 	}
-	return fitMixture(quotes, brokerage, f.anchor, f.Pull, f.absolute)
+	m, err := newFreeModel(quotes, f.Brokerage, f.options)
+	if err != nil {
+		return nil, err
+	}
+	return func(weights []float64) (Distortion, error) {
+		_, anchor, err := m.anchor(weights)
+		if err != nil {
+			return nil, err
+		}
+		x, err := m.fit(weights, anchor, f.Pull, nil)
+		if err != nil {
+			return nil, err
+		}
+		return mixtureOf(x, m.tails), nil
+	}, nil
 }
 
 // onKnots writes a distortion as a mixture with kinks at the knots, by chords between them; a jump at 0 is the supremum's part.
@@ -132,6 +163,15 @@ func (r *Replicates) Band(probabilities []float64, share float64) []Interval {
 		band[i] = Interval{values[cut], values[len(values)-1-cut]}
 	}
 	return band
+}
+
+// StandardErrors gives the standard deviation of g over the replicates at each probability.
+func (r *Replicates) StandardErrors(probabilities []float64) []float64 {
+	list := make([]float64, len(probabilities))
+	for i, s := range probabilities {
+		list[i] = stat.StdDev(r.At(s), nil)
+	}
+	return list
 }
 
 func dot(a, b []float64) float64 {

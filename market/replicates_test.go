@@ -89,6 +89,32 @@ func deviation(x []float64) float64 {
 	return math.Sqrt(sum / float64(len(x)-1))
 }
 
+// TestResampleIgnoresOrder: the order in which quotes stand draws no other replicates.
+func TestResampleIgnoresOrder(t *testing.T) {
+	for _, family := range []string{FamilyWang, FamilyFree} {
+		c := fittedCurve(t, family, 5)
+		r, err := Resample(c, 20, 1)
+		if err != nil {
+			t.Fatal(err)
+		}
+		turned := *c.Fit
+		turned.Quotes = slices.Clone(turned.Quotes)
+		slices.Reverse(turned.Quotes)
+		c.Fit = &turned
+		other, err := Resample(c, 20, 1)
+		if err != nil {
+			t.Fatal(err)
+		}
+		probabilities := []float64{0.002, 0.02, 0.2}
+		errors := r.StandardErrors(probabilities)
+		for i, e := range other.StandardErrors(probabilities) {
+			if !(e > 0) || e != errors[i] {
+				t.Errorf("%s: standard error of g(%v) is %v or, in another order, %v", family, probabilities[i], errors[i], e)
+			}
+		}
+	}
+}
+
 func TestResample(t *testing.T) {
 	c := fittedCurve(t, FamilyFree, 3)
 	one, err := Resample(c, 20, 1)
