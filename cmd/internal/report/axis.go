@@ -90,7 +90,7 @@ func upTo(x float64) float64 {
 	if !(x > 0) || math.IsInf(x, 0) {
 		return 1
 	}
-	step := niceStep(x / 5)
+	step := niceStep(x / 8)
 	return math.Ceil(x/step-1e-9) * step
 }
 

@@ -193,7 +193,9 @@ func curveJSON(c study.CurveFit) object {
 func fitJSON(f *market.Fit) object {
 	o := object{{"family", f.Family}, {"distortion", f.Distortion.String()}}
 	if m, ok := f.Distortion.(market.Mixture); ok {
-		knots := objects(m.Knots, func(k market.Knot) object { return object{{"probability", number(k.Tail)}, {"weight", number(k.Weight)}} })
+		knots := objects(m.Knots, func(k market.Knot) object {
+			return object{{"probability", number(k.Tail)}, {"weight", number(k.Weight)}}
+		})
 		o = append(o, field{"supremum", number(m.Supremum)}, field{"kinks", knots}, field{"pull", number(f.Pull)}, field{"pulled_towards", f.Toward})
 	} else {
 		o = append(o, field{"parameter", number(f.Parameter)}, field{"standard_error", number(f.StandardError)})

@@ -92,6 +92,9 @@ func decimals(standardError float64) int {
 
 // fixed gives x with so many digits behind the point; fewer than none rounds to tens, hundreds and so on.
 func fixed(x float64, places int) string {
+	if !finite(x) {
+		return "–"
+	}
 	if places < 0 {
 		grain := math.Pow(10, float64(-places))
 		x, places = math.Round(x/grain)*grain, 0
@@ -131,7 +134,10 @@ func minus(s string) string {
 
 // significant gives x with so many digits, without an exponent and without zeros at the end.
 func significant(x float64, digits int) string {
-	if x == 0 {
+	switch {
+	case !finite(x):
+		return "–"
+	case x == 0:
 		return "0"
 	}
 	value, err := strconv.ParseFloat(strconv.FormatFloat(x, 'g', digits, 64), 64)
@@ -167,22 +173,26 @@ func errorOf(e optimize.Estimate, factor float64) string {
 	return fixed(e.StandardError/factor, decimals(e.StandardError/factor))
 }
 
-// Money gives an amount without an error in its natural unit, to four digits: 12.35m.
-func Money(x float64) string {
-	if math.IsInf(x, 0) {
+// written gives an amount in its natural unit with so many digits.
+func written(x float64, digits int) string {
+	switch {
+	case math.IsInf(x, 1):
 		return "unlimited"
+	case !finite(x):
+		return "–"
 	}
 	u := unitFor(x)
-	return significant(x/u.factor, 4) + u.suffix
+	return significant(x/u.factor, digits) + u.suffix
+}
+
+// Money gives an amount without an error in its natural unit, to four digits: 12.35m.
+func Money(x float64) string {
+	return written(x, 4)
 }
 
 // Terms gives an amount that stands in a contract, in its natural unit, with every digit that it has up to twelve.
 func Terms(x float64) string {
-	if math.IsInf(x, 0) {
-		return "unlimited"
-	}
-	u := unitFor(x)
-	return significant(x/u.factor, 12) + u.suffix
+	return written(x, 12)
 }
 
 // Estimated gives an amount with its error, in its natural unit: 12.3m ± 0.4m.

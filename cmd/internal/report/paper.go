@@ -16,7 +16,8 @@ import (
 var paperText string
 
 var paper = template.Must(template.New("paper").Funcs(template.FuncMap{
-	"figure": func(cell string) string { figure, _ := split(cell); return figure },
+	"clean":  clean,
+	"figure": func(cell string) string { figure, _ := split(clean(cell)); return figure },
 	"error":  func(cell string) string { _, err := split(cell); return strings.TrimSpace(err) },
 	"inc":    func(i int) int { return i + 1 },
 }).Parse(paperText))

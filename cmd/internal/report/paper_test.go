@@ -2,11 +2,11 @@ package report
 
 import (
 	"bytes"
+	"encoding/csv"
 	"encoding/xml"
 	"errors"
 	"io"
-	"os"
-	"path/filepath"
+	"math"
 	"strings"
 	"testing"
 
@@ -16,122 +16,208 @@ import (
 	"cedewright/portfolio/treaty"
 )
 
-// appraisalOf gives an appraisal with figures of plausible size.
-func appraisalOf(name string, margin, relief float64, treaties ...treaty.Treaty) optimize.Appraisal {
-	a := optimize.Appraisal{
-		Programme: treaty.Programme{Name: name, Treaties: treaties},
-		Capital:   []optimize.CapitalFigure{{Standard: "one-year", Gross: optimize.Estimate{Value: 300e6, StandardError: 9e6}, Net: optimize.Estimate{Value: 300e6 - relief, StandardError: 8e6}, Relief: optimize.Estimate{Value: relief, StandardError: 4e6}}},
+const nasty = `<script>alert("x")</script> & 'more' ]]> =1+1` + "\x1b[31m\x00"
+
+// oddSearches are results at the edges of what a search can give.
+func oddSearches() map[string]study.Searched {
+	all := map[string]study.Searched{}
+	add := func(name string, change func(*study.Searched)) {
+		s := marramSearched()
+		change(&s)
+		all[name] = s
 	}
-	a.CededMargin = optimize.Estimate{Value: margin, StandardError: 1e5}
-	a.TotalCost = optimize.Estimate{Value: margin + 0.09*(300e6-relief), StandardError: 7e5}
-	a.Rent, a.RentDefined = optimize.Estimate{Value: margin / relief, StandardError: 0.01}, relief > 0
-	for _, u := range treaties {
-		a.Treaties = append(a.Treaties, optimize.TreatyFigure{Terms: u, Premium: optimize.Estimate{Value: 1e6, StandardError: 2e4}, AttachmentProbability: optimize.Estimate{Value: 0.04}})
-	}
-	return a
+	add("usual", func(*study.Searched) {})
+	add("empty frontier", func(s *study.Searched) { s.Result.Frontier = nil })
+	add("one programme on the frontier", func(s *study.Searched) { s.Result.Frontier = s.Result.Frontier[:1] })
+	add("two programmes on the frontier", func(s *study.Searched) { s.Result.Frontier = s.Result.Frontier[:2] })
+	add("start without cover", func(s *study.Searched) {
+		s.Start, s.Programmes, s.Scales = s.NoCover, []optimize.Appraisal{s.NoCover, s.Result.Best}, [][][]float64{{}, s.Scales[1]}
+	})
+	add("nothing to buy", func(s *study.Searched) {
+		s.Result.Best = s.NoCover
+		s.Result.Best.Programme.Name, s.Result.Frontier, s.Curves, s.Scales = "best found", nil, nil, nil
+	})
+	add("nothing at all", func(s *study.Searched) {
+		empty := optimize.Appraisal{Capital: make([]optimize.CapitalFigure, 1)}
+		*s = study.Searched{Start: empty, NoCover: empty, Result: optimize.Result{Best: empty}}
+	})
+	add("relief below zero, margin below zero", func(s *study.Searched) {
+		s.Start.Capital[0].Relief, s.Start.CededMargin, s.Start.RentDefined = est(-30e6, 4e6), est(-2e6, 1e5), false
+	})
+	add("unlimited layer, overlapping layers, odd shares", func(s *study.Searched) {
+		s.Result.Best.Treaties[1].Terms.Limit = math.Inf(1)
+		s.Result.Best.Treaties[2].Terms.Retention, s.Result.Best.Treaties[2].Terms.Share = 130e6, 0.37
+		s.Result.Best.Treaties[3].Terms.Share = 0
+	})
+	add("names of every kind", func(s *study.Searched) {
+		s.Title, s.Currency, s.Space, s.Notes, s.Warnings = nasty, nasty, nasty, []string{nasty}, []string{nasty}
+		s.Start.Programme.Name, s.Programmes[1].Programme.Name = nasty, nasty
+		s.Inputs[0].Path, s.Curves[0].Curve.Name, s.Keep[0].Standard = nasty, nasty, nasty
+		s.Curve.Programmes[0], s.NoCover.Capital[0].Standard = nasty, nasty
+		for i := range s.Result.Best.Treaties {
+			f := &s.Result.Best.Treaties[i]
+			f.Terms.Name, f.Terms.Perils, f.Terms.Classes, f.PricedBy = nasty, []string{nasty}, []string{nasty}, nasty
+		}
+		s.Curves[0].Chosen.Quotes[0].Name = nasty
+	})
+	add("no number anywhere", func(s *study.Searched) {
+		nan := est(math.NaN(), math.NaN())
+		b := &s.Result.Best
+		b.CededPremium, b.CededMargin, b.TotalCost, b.Rent, b.NetResult.Mean, b.NetResult.StandardDeviation = nan, nan, est(1, math.Inf(1)), nan, nan, math.NaN()
+		b.Capital[0].Relief, b.Capital[0].Net = nan, est(math.Inf(1), 1)
+		for i := range b.Treaties {
+			b.Treaties[i].AttachmentProbability, b.Treaties[i].Premium, b.Treaties[i].RateOnLine = nan, nan, math.NaN()
+		}
+		s.Result.Frontier[0].CededMargin, s.Curve.Net[1][3], s.OwnFunds = nan, math.NaN(), math.NaN()
+		q := &s.Curves[0].Chosen.Quotes[0]
+		q.Fitted, q.Residual, q.Multiple, q.LeftOut = math.NaN(), math.NaN(), math.Inf(1), math.NaN()
+	})
+	return all
 }
 
-// found gives the result of a search whose names hold what HTML must escape.
-func found(frontier int, names ...string) study.Searched {
-	layer := treaty.Treaty{Name: names[0], Kind: treaty.EventExcess, Retention: 40e6, Limit: 60e6, Share: 0.5, Perils: []string{names[0]}}
-	none, start := appraisalOf("no cover", 0, 0), appraisalOf(names[0], 8e6, 60e6, layer)
-	best := appraisalOf("best found", 5e6, 90e6, layer, treaty.Treaty{Name: "q", Kind: treaty.QuotaShare, Cession: 0.1})
-	s := study.Searched{
-		Appraised: study.Appraised{Head: study.Head{Title: names[0], Currency: "EUR", Years: 1000, Warnings: []string{names[0]}}, CostOfCapital: 0.09, Programmes: []optimize.Appraisal{none, start, best}},
-		NoCover:   none, Start: start,
-		Curve:  study.ExceedanceCurves{ReturnPeriods: []float64{2, 10, 100}, Gross: []float64{10e6, 50e6, 200e6}, Programmes: []string{names[0], "best found"}, Net: [][]float64{{9e6, 30e6, 90e6}, {9e6, 40e6, 80e6}}},
-		Curves: []study.CurveFit{{Curve: market.Curve{Name: names[0], Distortion: market.Wang{Lambda: 0.4}}}},
+func wellFormed(t *testing.T, what, text string) {
+	t.Helper()
+	d := xml.NewDecoder(strings.NewReader("<all>" + text + "</all>"))
+	for {
+		if _, err := d.Token(); errors.Is(err, io.EOF) {
+			return
+		} else if err != nil {
+			t.Errorf("%s: %v\n%.400s", what, err, text)
+			return
+		}
 	}
-	s.Scales = [][][]float64{{{1, 2, 3, 10e6, 20e6, 40e6, 80e6, 200e6, 400e6}}, {{1, 2, 3, 10e6, 20e6, 40e6, 80e6, 200e6, 400e6}, nil}}
-	s.Differences = []study.Difference{{Programme: "best found", Against: names[0], TotalCost: optimize.Estimate{Value: -6e6, StandardError: 3e5}}}
-	s.Result = optimize.Result{Best: best, Feasible: true, Status: optimize.Settled}
-	for i := range frontier {
-		s.Result.Frontier = append(s.Result.Frontier, appraisalOf("frontier", float64(i)*1e6, float64(i)*10e6, layer))
-	}
-	return s
 }
 
-const nasty = `<script>alert("x")</script> & 'more' =1+1`
-
-// TestPaperIsWellFormed: every picture is well-formed and nothing of a name reaches the page unescaped, for empty, short and full frontiers.
-func TestPaperIsWellFormed(t *testing.T) {
-	for _, n := range []int{0, 1, 2, 40} {
-		s := found(n, nasty)
-		var b bytes.Buffer
-		if err := Paper(&b, s, nil); err != nil {
-			t.Fatal(err)
+// TestOddResults: every picture of every odd result is well-formed XML with a name for those who cannot see it, and no form of output
+// holds a raw name or what is no number.
+func TestOddResults(t *testing.T) {
+	for name, s := range oddSearches() {
+		pictures := []string{frontierPicture(s), exceedancePicture(s), capitalPicture(s), towersPicture(s.Currency, s.Scales, s.Start, s.Result.Best)}
+		for _, c := range s.Curves {
+			pictures = append(pictures, curvePicture(c), standalone(curvePicture(c)))
 		}
-		if strings.Contains(b.String(), "<script") {
-			t.Error("a name reached the page unescaped")
+		for _, picture := range pictures {
+			wellFormed(t, name, picture)
+			if n := strings.Count(picture, "<svg"); strings.Count(picture, `role="img"`) != n || strings.Count(picture, "<desc>") != n {
+				t.Errorf("%s: a picture has no name", name)
+			}
 		}
-		if strings.Contains(b.String(), "NaN") {
-			t.Error("the page holds NaN")
+		var page, text, csvText bytes.Buffer
+		if err := Paper(&page, s, marramRun); err != nil {
+			t.Errorf("%s: %v", name, err)
 		}
-		for _, picture := range []string{frontierPicture(s), exceedancePicture(s), curvePicture(s.Curves[0]), towersPicture("EUR", s.Scales, s.Start, s.Result.Best), standalone(curvePicture(s.Curves[0]))} {
-			d := xml.NewDecoder(strings.NewReader("<all>" + picture + "</all>"))
-			for {
-				if _, err := d.Token(); errors.Is(err, io.EOF) {
-					break
-				} else if err != nil {
-					t.Fatalf("picture with %d points: %v\n%s", n, err, picture)
+		PrintSearched(&text, s, Style{})
+		if err := FrontierCSV(&csvText, s); err != nil {
+			t.Errorf("%s: %v", name, err)
+		}
+		for form, b := range map[string]string{"page": page.String(), "text": text.String(), "csv": csvText.String()} {
+			for _, never := range []string{"NaN", "Inf", "%!", "\x1b", "\x00"} {
+				if strings.Contains(b, never) {
+					at := strings.Index(b, never)
+					t.Errorf("%s: the %s holds %q: …%s…", name, form, never, b[max(0, at-60):min(len(b), at+20)])
 				}
 			}
-			if !strings.Contains(picture, "<title>") || !strings.Contains(picture, `role="img"`) {
-				t.Error("a picture has no title")
-			}
 		}
-		var text bytes.Buffer
-		PrintSearched(&text, s, Style{})
-		for _, want := range []string{"Buy “best found”", "a difference of −6.0m ± 0.3m", Caution[:40]} {
-			if !strings.Contains(text.String(), want) {
-				t.Errorf("the terminal does not say %q", want)
-			}
+		if strings.Contains(page.String(), "<script") {
+			t.Errorf("%s: a name reached the page as markup", name)
+		}
+		if !strings.Contains(page.String(), "not a regulatory filing") || !strings.Contains(text.String(), "not a regulatory filing") {
+			t.Errorf("%s: the caution is missing", name)
 		}
 	}
-	s := found(0, "start")
-	s.Result.Feasible = false
-	s.Result.Shortfalls = []optimize.Shortfall{{Keep: optimize.Keep{Measure: "own funds ratio", AtLeast: treaty.Some(1.6)}, Value: 1.2}}
-	if text := Recommendation(s); !strings.Contains(text, "No programme of the space keeps every constraint") || !strings.Contains(text, "own funds ratio is 120 %, at least 160 % is asked") {
-		t.Errorf("infeasible: %s", text)
+}
+
+// TestPaperStandsAlone: the page loads nothing.
+func TestPaperStandsAlone(t *testing.T) {
+	var b bytes.Buffer
+	if err := Paper(&b, marramSearched(), nil); err != nil {
+		t.Fatal(err)
+	}
+	text := strings.ReplaceAll(b.String(), `xmlns="http://www.w3.org/2000/svg"`, "")
+	for _, outside := range []string{"http:", "https:", "src=", "href=", "<script", "@import", "url("} {
+		if strings.Contains(text, outside) {
+			t.Errorf("the page holds %q", outside)
+		}
+	}
+}
+
+func TestRecommendation(t *testing.T) {
+	for name, c := range map[string]struct {
+		change func(*study.Searched)
+		wants  []string
+	}{
+		"usual": {func(*study.Searched) {}, []string{
+			"Buy “best found”: 5 treaties for EUR 8.68m ± 0.08m of premium a year, which costs a margin of 5.53m ± 0.06m a year and frees 96m ± 5m of required capital (one-year), a rent of 5.8 % ± 0.5 % against a cost of capital of 9 %.",
+			"30.0m ± 0.6m a year, against 38.0m ± 0.6m with “expiring” (a difference of −8.0m ± 0.3m) and 33.1m ± 0.6m without cover."}},
+		"noise": {func(s *study.Searched) { s.Differences[2].TotalCost = est(-0.4e6, 0.3e6) }, []string{"which the simulation cannot tell from none"}},
+		"keep": {func(s *study.Searched) {
+			s.Result.Best = s.Start
+			s.Result.Best.Programme.Name = "best found"
+		}, []string{"Keep “expiring”: 5 treaties", "against 33.1m ± 0.6m without cover."}},
+		"nothing": {func(s *study.Searched) { s.Result.Best = s.NoCover }, []string{"Buy nothing", "with “expiring”"}},
+		"no rent": {func(s *study.Searched) { s.Result.Best.RentDefined = false }, []string{"(one-year). Margin"}},
+		"infeasible": {func(s *study.Searched) {
+			s.Result.Feasible = false
+			s.Result.Shortfalls = []optimize.Shortfall{
+				{Keep: optimize.Keep{Measure: "own funds ratio", Standard: "tail", AtLeast: treaty.Some(1.6)}, Value: 1.2},
+				{Keep: optimize.Keep{Measure: "ceded premium", AtMost: treaty.Some(5)}, Value: 7},
+			}
+		}, []string{"No programme of the space keeps every constraint; the one shown breaks them least. In the way: own funds ratio under tail is 120 %, at least 160 % is asked; ceded premium is 7, at most 5 is asked."}},
+	} {
+		s := marramSearched()
+		c.change(&s)
+		for _, want := range c.wants {
+			if text := Recommendation(s); !strings.Contains(text, want) {
+				t.Errorf("%s: %q does not say %q", name, text, want)
+			}
+		}
 	}
 }
 
 func TestFrontierCSV(t *testing.T) {
-	s := found(3, "=cmd")
+	s := marramSearched()
 	for i := range s.Result.Frontier {
-		s.Result.Frontier[i].Programme.Name = "=cmd"
+		s.Result.Frontier[i].Programme.Name, s.Result.Frontier[i].Treaties[0].Terms.Name = "=cmd", "@x"
 	}
+	s.Result.Frontier[0].RentDefined = false
 	var b bytes.Buffer
 	if err := FrontierCSV(&b, s); err != nil {
 		t.Fatal(err)
 	}
-	lines := strings.Split(strings.TrimSpace(b.String()), "\n")
-	if len(lines) != 4 || !strings.HasPrefix(lines[1], "'=cmd,") || !strings.Contains(lines[1], "'=cmd: 60m xs 40m") {
-		t.Errorf("frontier.csv:\n%s", b.String())
+	rows, err := csv.NewReader(&b).ReadAll()
+	if err != nil {
+		t.Fatal(err)
+	}
+	if len(rows) != len(s.Result.Frontier)+1 || rows[1][0] != "'=cmd" || !strings.HasPrefix(rows[1][12], "'@x: ") || rows[1][10] != "" {
+		t.Errorf("frontier.csv starts with %q", rows[:2])
 	}
 }
 
-func TestWriteFolder(t *testing.T) {
-	parent := t.TempDir()
-	folder := filepath.Join(parent, "run")
-	good := []File{{Name: marker, Write: func(w io.Writer) error { _, err := io.WriteString(w, `{"program":"cedewright"}`); return err }}}
-	if err := WriteFolder(folder, false, good); err != nil {
-		t.Fatal(err)
+// TestPanelsGroupBySubject: the order in which classes are named makes no other subject; kinds and perils do.
+func TestPanelsGroupBySubject(t *testing.T) {
+	a := layer("a", treaty.EventExcess, 10e6, 10e6, 1, 1e6, 5e5, 0.1, 0.05, 1e6)
+	b := layer("b", treaty.EventExcess, 20e6, 10e6, 1, 1e6, 5e5, 0.1, 0.05, 1e6)
+	b.Terms.Classes = []string{"commercial", "household"}
+	other, unplaced := a, a
+	other.Terms.Kind = treaty.RiskExcess
+	unplaced.Terms.Perils, unplaced.Terms.Share = []string{"hail"}, 0
+	list := panels([]optimize.Appraisal{{Treaties: []optimize.TreatyFigure{a, other, unplaced}}, {Treaties: []optimize.TreatyFigure{b}}}, [][][]float64{{nil, nil, nil}, {{1, 2}}})
+	if len(list) != 2 || len(list[0].treaties[0]) != 1 || len(list[0].treaties[1]) != 1 || len(list[0].scale) != 2 || list[0].top() != 30e6 {
+		t.Errorf("panels %+v", list)
 	}
-	if err := WriteFolder(folder, false, good); err == nil {
-		t.Error("results were overwritten without being asked")
-	}
-	failing := append(good, File{Name: "x", Write: func(io.Writer) error { return errors.New("disk full") }})
-	if err := WriteFolder(folder, true, failing); err == nil || !strings.Contains(err.Error(), "disk full") {
-		t.Errorf("a failure while writing: %v", err)
-	}
-	if data, err := os.ReadFile(filepath.Join(folder, marker)); err != nil || !strings.Contains(string(data), "cedewright") {
-		t.Errorf("the old results are gone: %v", err)
-	}
-	if entries, err := os.ReadDir(parent); err != nil || len(entries) != 1 {
-		t.Errorf("half-written files stay behind: %v", entries)
-	}
-	if err := WriteFolder(folder, true, good); err != nil {
-		t.Errorf("--replace: %v", err)
+}
+
+func TestQuoteMarks(t *testing.T) {
+	f := &market.Fit{InSample: 0.02}
+	for want, q := range map[string]market.FittedQuote{
+		"weight 0, not used":      {Residual: 0.3},
+		"cheap against the curve": {Quote: market.Quote{Weight: 1}, Residual: 0.05},
+		"dear against the curve":  {Quote: market.Quote{Weight: 1}, Residual: -0.05},
+		"alone in its range":      {Quote: market.Quote{Weight: 1}, Residual: 0.01, BelowRange: true},
+		"":                        {Quote: market.Quote{Weight: 1}, Residual: 0.03},
+	} {
+		if got := quoteMark(f, q); got != want {
+			t.Errorf("residual %v is marked %q, want %q", q.Residual, got, want)
+		}
 	}
 }

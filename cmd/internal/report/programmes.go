@@ -68,7 +68,7 @@ func printTreaties(w io.Writer, s Style, p optimize.Appraisal) {
 	for _, f := range p.Treaties {
 		bullet(w, s, f.Terms.Name+": "+termsOf(f))
 	}
-	wrapped(w, "  Rates are for 100 % of a treaty. Relief is last in: required capital without the treaty less with it, first standard.", "  ", s.width())
+	wrapped(w, "Rates are for 100 % of a treaty. Relief is last in: required capital without the treaty less with it, first standard.", "", s.width())
 	fmt.Fprintln(w)
 }
 

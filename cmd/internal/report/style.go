@@ -12,7 +12,7 @@ const (
 const pictureStyle = `.grid{stroke:var(--line);stroke-width:1}.edge{stroke:var(--quiet);stroke-width:1}
 .tick,.note{fill:var(--soft);font-size:12px}.note{fill:var(--ink)}.axis{fill:var(--soft);font-size:13px}
 .label,.note{paint-order:stroke;stroke:var(--page);stroke-width:4px;stroke-linejoin:round}.label{fill:var(--ink);font-size:13px}
-.strong{font-weight:650}.main-text{fill:var(--main)}.warm-text{fill:var(--warm)}.quiet-text{fill:var(--soft);font-style:italic}
+.share{fill:var(--soft);font-size:10.5px}.strong{font-weight:650}.main-text{fill:var(--main)}.warm-text{fill:var(--warm)}.quiet-text{fill:var(--soft);font-style:italic}
 .leader{stroke:var(--quiet);stroke-width:.8}.whisker{stroke:var(--ink);stroke-width:1.2;opacity:.55}
 polyline{fill:none;stroke-width:2.2;stroke-linejoin:round}.front,.best-line{stroke:var(--main)}.beyond{stroke:var(--main);stroke-dasharray:3 4;opacity:.75}
 .own{stroke:var(--warm);stroke-width:1.6;stroke-dasharray:7 5;fill:none}.cheap{fill:var(--cheap)}

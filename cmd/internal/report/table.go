@@ -10,12 +10,12 @@ import (
 
 // Style says how text is laid out on a terminal.
 type Style struct {
-	Width  int  // letters in a line; 0 = 112
+	Width  int  // letters in a line; 0 = 118
 	Colour bool // bold and dim type; without it the text is plain
 }
 
 const (
-	defaultWidth = 112
+	defaultWidth = 118
 	leastWidth   = 60 // a narrower terminal gets lines of this width
 	mostWidth    = 140
 )
@@ -127,9 +127,10 @@ func (g *grid) print(w io.Writer, s Style) {
 	for i := range g.head {
 		g.head[i] = clean(g.head[i])
 	}
-	for _, row := range g.rows {
-		for i := range row.cells {
-			row.cells[i] = clean(row.cells[i])
+	for k := range g.rows {
+		g.rows[k].name = clean(g.rows[k].name)
+		for i := range g.rows[k].cells {
+			g.rows[k].cells[i] = clean(g.rows[k].cells[i])
 		}
 	}
 	rooms := make([]columnRoom, len(g.head))

@@ -172,10 +172,10 @@ func (c *chart) share(share, left, from, y, height float64) {
 		return
 	}
 	if from > left || share > 0.5 {
-		c.text("tick", from+3, y, "start", percentOf(share))
+		c.text("share", from+3, y, "start", percentOf(share))
 		return
 	}
-	c.text("tick", left+blockWidth-2, y, "end", percentOf(share))
+	c.text("share", left+blockWidth-3, y, "end", percentOf(share))
 }
 
 func percentOf(x float64) string { return significant(100*x, 4) + " %" }

@@ -1,0 +1,112 @@
+package report
+
+import (
+	"bytes"
+	"encoding/json"
+	"io"
+	"math"
+	"reflect"
+	"strings"
+	"testing"
+
+	"cedewright/cmd/internal/study"
+	"cedewright/optimize"
+	"cedewright/portfolio/treaty"
+)
+
+// TestJSONOfOddResults: every document is valid JSON, whatever is no number in it, and reads back with its signs as they were.
+func TestJSONOfOddResults(t *testing.T) {
+	for name, s := range oddSearches() {
+		for _, build := range []func(io.Writer) error{
+			func(w io.Writer) error { return SearchedJSON(w, s, marramRun) },
+			func(w io.Writer) error { return AppraisedJSON(w, s.Appraised) },
+			func(w io.Writer) error { return FittedJSON(w, study.Fitted{Head: s.Head, Curves: s.Curves}) },
+		} {
+			var b bytes.Buffer
+			if err := build(&b); err != nil {
+				t.Errorf("%s: %v", name, err)
+				continue
+			}
+			var document struct{ Study string }
+			if err := json.Unmarshal(b.Bytes(), &document); err != nil {
+				t.Errorf("%s: %v", name, err)
+			}
+			if document.Study != s.Title {
+				t.Errorf("%s: the title %q reads back as %q", name, s.Title, document.Study)
+			}
+		}
+	}
+}
+
+// spoil makes every float of a result NaN or infinite, but not the terms of treaties, which are checked before anything is computed.
+func spoil(v reflect.Value, with float64) {
+	if v.Type() == reflect.TypeFor[treaty.Treaty]() {
+		return
+	}
+	switch v.Kind() {
+	case reflect.Float64:
+		v.SetFloat(with)
+	case reflect.Struct:
+		for i := range v.NumField() {
+			if v.Field(i).CanSet() {
+				spoil(v.Field(i), with)
+			}
+		}
+	case reflect.Slice, reflect.Array:
+		for i := range v.Len() {
+			spoil(v.Index(i), with)
+		}
+	}
+}
+
+func TestNoFigureBreaksTheDocument(t *testing.T) {
+	for _, bad := range []float64{math.NaN(), math.Inf(1), math.Inf(-1)} {
+		l := marramLook()
+		spoil(reflect.ValueOf(&l).Elem(), bad)
+		a := marramAppraised()
+		spoil(reflect.ValueOf(&a).Elem(), bad)
+		for _, build := range []func(io.Writer) error{func(w io.Writer) error { return LookJSON(w, l) }, func(w io.Writer) error { return AppraisedJSON(w, a) }} {
+			var b bytes.Buffer
+			if err := build(&b); err != nil || !json.Valid(b.Bytes()) {
+				t.Errorf("%v: %v", bad, err)
+			}
+		}
+		var text bytes.Buffer
+		PrintLook(&text, l, Style{})
+		PrintAppraised(&text, a, Style{})
+		if s := text.String(); strings.Contains(s, "NaN") || strings.Contains(s, "Inf") {
+			t.Errorf("the text holds %v:\n%s", bad, s)
+		}
+	}
+}
+
+// TestFieldsKeepTheirOrder: a reader finds the names first.
+func TestFieldsKeepTheirOrder(t *testing.T) {
+	var b bytes.Buffer
+	if err := AppraisedJSON(&b, marramAppraised()); err != nil {
+		t.Fatal(err)
+	}
+	last := -1
+	for _, key := range []string{`"study"`, `"currency"`, `"years"`, `"gross"`, `"programmes"`, `"name"`, `"ceded_premium"`, `"treaties"`} {
+		at := strings.Index(b.String(), key)
+		if at <= last {
+			t.Errorf("%s stands at %d, before %d", key, at, last)
+		}
+		last = at
+	}
+	odd, err := json.Marshal(object{{"a<b", "<&>"}, {"n", none}})
+	if err != nil || !json.Valid(odd) {
+		t.Errorf("%s (%v)", odd, err)
+	}
+}
+
+func TestBound(t *testing.T) {
+	s := marramSearched()
+	if b := bound(s); !math.IsNaN(float64(b[0].value.(number))) {
+		t.Errorf("a bound without proof: %v", b)
+	}
+	s.Result.Status = optimize.Proven
+	if b := bound(s); float64(b[0].value.(number)) != s.Result.Best.TotalCost.Value {
+		t.Errorf("the bound of an exhausted space: %v", b)
+	}
+}
