@@ -1,7 +1,6 @@
 package market
 
 import (
-	"errors"
 	"fmt"
 	"math"
 )
@@ -176,25 +175,27 @@ func (b bounds) solved(p *linearProgramme) ([]float64, error) {
 
 // extremes gives the least and the greatest value of target·w over all weights within the bounds; errInfeasible when there are none.
 func (b bounds) extremes(target []float64) (low, high float64, err error) {
-	for _, sign := range []float64{1, -1} {
-		p := b.programme()
-		for j := range b.rows {
-			b.within(p, j, -1, -1)
-		}
-		for k, v := range target {
-			p.cost[k] = sign * v
-		}
-		value, _, err := p.solve()
-		if err != nil {
-			return 0, 0, err
-		}
-		if sign > 0 {
-			low = value
-		} else {
-			high = -value
-		}
+	if low, _, err = b.extreme(target, 1); err != nil {
+		return 0, 0, err
 	}
-	return low, high, nil
+	high, _, err = b.extreme(target, -1)
+	return low, high, err
+}
+
+// extreme gives the least (sign 1) or the greatest (sign −1) value of target·w, and weights that have it.
+func (b bounds) extreme(target []float64, sign float64) (float64, []float64, error) {
+	p := b.programme()
+	for j := range b.rows {
+		b.within(p, j, -1, -1)
+	}
+	for k, v := range target {
+		p.cost[k] = sign * v
+	}
+	value, x, err := p.solve()
+	if err != nil {
+		return 0, nil, err
+	}
+	return sign * value, x[:len(target)], nil
 }
 
 // Interval is a range of values.
@@ -218,6 +219,9 @@ func (b bounds) widened() (bounds, float64, error) {
 	for j := range open.low {
 		open.low[j] -= worst * (1 + 1e-6)
 		open.high[j] += worst * (1 + 1e-6)
+	}
+	if worst <= lpMissed { // rounding
+		worst = 0
 	}
 	return open, worst, nil
 }
@@ -246,18 +250,40 @@ func Band(quotes []Quote, brokerage float64, probabilities []float64) ([]Interva
 }
 
 // RateInterval gives the least and greatest rate on line, brokerage included, that the quotes alone allow for a layer that is described like a quote (its
-// own RateOnLine is not looked at), for layers without paid reinstatements.
+// own RateOnLine is not looked at).
 func RateInterval(quotes []Quote, brokerage float64, layer Quote) (Interval, error) {
 	b, _, err := openBounds(quotes, brokerage)
 	if err != nil {
 		return Interval{}, err
 	}
-	row, _ := layer.columns(b.tails, brokerage)
-	low, high, err := b.extremes(row)
-	if errors.Is(err, errInfeasible) {
+	low, err := b.extremeRate(layer, brokerage, 1)
+	if err != nil {
 		return Interval{}, err
 	}
-	return Interval{low / (1 - brokerage), high / (1 - brokerage)}, err
+	high, err := b.extremeRate(layer, brokerage, -1)
+	return Interval{low, high}, err
+}
+
+// extremeRate gives the least (sign 1) or greatest (sign −1) rate of a layer. With paid reinstatements the rate is no linear function of the weights, but
+// ρ(R − P·F) at a fixed P is: the curve that is extreme at one P gives the next, which only moves outward until it stays (Dinkelbach 1967).
+func (b bounds) extremeRate(layer Quote, brokerage, sign float64) (float64, error) {
+	layer.RateOnLine = 0
+	for range newtonSteps {
+		row, _ := layer.columns(b.tails, brokerage)
+		_, w, err := b.extreme(row, sign)
+		if err != nil {
+			return 0, err
+		}
+		rate := layer.rate(mixtureOf(w, b.tails), brokerage)
+		if math.IsNaN(rate) {
+			return 0, fmt.Errorf("market: interval of rates: layer %q has no price", layer.Name)
+		}
+		if math.Abs(rate-layer.RateOnLine) <= lpMissed*rate {
+			return rate, nil
+		}
+		layer.RateOnLine = rate
+	}
+	return 0, fmt.Errorf("market: interval of rates: layer %q: no end after %d steps", layer.Name, newtonSteps)
 }
 
 func openBounds(quotes []Quote, brokerage float64) (bounds, float64, error) {

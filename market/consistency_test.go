@@ -4,6 +4,7 @@ import (
 	"encoding/json"
 	"errors"
 	"math"
+	"math/rand/v2"
 	"os"
 	"testing"
 
@@ -153,6 +154,56 @@ func TestConsistencyOfOneCurve(t *testing.T) {
 	}
 	if _, err := CheckConsistency(syntheticQuotes(mostConsistent+1, truth), 0); !errors.Is(err, ErrTooManyQuotes) {
 		t.Errorf("%v", err)
+	}
+}
+
+// TestRateIntervalOfOwnLayers: with free and paid reinstatements the interval holds the rate of the true curve, and its ends are rates of curves that
+// price all quotes, as no member of a large family of such curves lies beyond them.
+func TestRateIntervalOfOwnLayers(t *testing.T) {
+	const brokerage = 0.1
+	truth := Wang{0.4}
+	var quotes []Quote
+	for _, q := range syntheticQuotes(7, truth) {
+		q.RateOnLine = q.rate(truth, brokerage)
+		q.Bid, q.Offer = 0.95*q.RateOnLine, min(1.05*q.RateOnLine, 1)
+		quotes = append(quotes, q)
+	}
+	b, opened, err := openBounds(quotes, brokerage)
+	if err != nil || opened != 0 {
+		t.Fatalf("opened %v, %v", opened, err)
+	}
+	r := rand.New(rand.NewPCG(3, 4))
+	for _, layer := range mixedQuotes()[4:] {
+		interval, err := RateInterval(quotes, brokerage, layer)
+		if err != nil {
+			t.Fatal(err)
+		}
+		within := func(what string, rate float64) {
+			if rate < interval.Low*(1-1e-6) || rate > interval.High*(1+1e-6) {
+				t.Errorf("%v: %s asks %v, outside %+v", layer.Terms.Reinstatements, what, rate, interval)
+			}
+		}
+		within("the true curve", layer.rate(truth, brokerage))
+		ends := make([][]float64, 0, 12)
+		for range 12 { // curves that are extreme in some other direction, and mixtures of two of them, price all quotes too
+			target := make([]float64, len(b.tails)+1)
+			for k := range target {
+				target[k] = r.NormFloat64()
+			}
+			_, w, err := b.extreme(target, 1)
+			if err != nil {
+				t.Fatal(err)
+			}
+			ends = append(ends, w)
+		}
+		for i := range ends {
+			mixed := make([]float64, len(ends[i]))
+			for k := range mixed {
+				mixed[k] = (ends[i][k] + ends[(i+1)%len(ends)][k]) / 2
+			}
+			within("a curve", layer.rate(mixtureOf(ends[i], b.tails), brokerage))
+			within("a mixture of curves", layer.rate(mixtureOf(mixed, b.tails), brokerage))
+		}
 	}
 }
 
