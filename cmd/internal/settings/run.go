@@ -22,6 +22,7 @@ type Run struct {
 	Workers     int     // goroutines, 1 to 4,096; default: the processors of the machine; never changes a result
 	Seed        *uint64 // of the search; nil = given nowhere
 	Out         string  // folder to write to; "" = none
+	Scenario    string  // of the market, by its name in the study; "" = none
 	Replace     bool    // overwrite what stands in Out
 	JSON        bool    // print one JSON document
 	NoColor     bool    // no colour on the terminal; NO_COLOR, if not empty, says the same
@@ -52,6 +53,7 @@ func runSettings() []setting {
 		{name: "workers", usage: "goroutines (default: the processors of the machine)", kind: "count", least: 1, most: 4096, preset: strconv.Itoa(min(runtime.GOMAXPROCS(0), 4096))},
 		{name: "seed", usage: "seed of the search", kind: "seed"},
 		{name: "out", usage: "write the results to this folder", kind: "text"},
+		{name: "scenario", usage: "a market scenario of the study, by its name", kind: "text"},
 		{name: "replace", usage: "overwrite files in the folder of --out", kind: "switch", preset: "false"},
 		{name: "json", usage: "print one JSON document", kind: "switch", preset: "false"},
 		{name: "no-color", usage: "no colour on the terminal", kind: "switch", preset: "false"},
@@ -62,7 +64,7 @@ func runSettings() []setting {
 	}
 }
 
-// AddFlags adds the flags that every verb has: --workers, --seed, --out, --replace, --json, --no-color.
+// AddFlags adds the flags that every verb has: --workers, --seed, --out, --scenario, --replace, --json, --no-color.
 func AddFlags(flags *pflag.FlagSet) { addFlags(flags, false) }
 
 // AddSearchFlags adds the flags of a search's budget: --population, --generations, --evaluations, --patience.
@@ -236,10 +238,10 @@ func (r *runReader) take(one setting) {
 		*r.toggle(one.name) = value
 	case "text":
 		if text == "" && r.flags.Changed(one.name) {
-			bad("the path of a folder")
+			bad(map[string]string{"out": "the path of a folder", "scenario": "the name of a scenario of the study"}[one.name])
 			return
 		}
-		r.run.Out = text
+		*r.text(one.name) = text
 	}
 }
 
@@ -255,6 +257,13 @@ func (r *runReader) count(name string) *int {
 		return &r.run.Patience
 	}
 	return &r.run.Workers
+}
+
+func (r *runReader) text(name string) *string {
+	if name == "scenario" {
+		return &r.run.Scenario
+	}
+	return &r.run.Out
 }
 
 func (r *runReader) toggle(name string) *bool {

@@ -18,10 +18,11 @@ import (
 	"cedewright/portfolio/treaty"
 )
 
-// Options of a run; none changes a figure but Seed.
+// Options of a run; none changes a figure but Seed and Scenario.
 type Options struct {
 	Seed     *uint64 // of the book's models; nil = that of the study
 	Workers  int     // at least 1
+	Scenario string  // of the market; "" = none
 	Progress func(stage string)
 }
 

@@ -79,6 +79,16 @@ type CurveFit struct {
 	Curve      market.Curve
 	Chosen     *market.Fit   // nil when the curve was set by hand
 	Candidates []*market.Fit // all families tried, for comparison
+
+	Recommended *market.Fit // what the quotes speak for; nil when the curve was set by hand
+	Reason      string      // why
+
+	// Of the answers of fit and search alone:
+	Consistency *market.Consistency // whether one curve can price all quotes; nil for a curve by hand or with too many quotes
+	BandAt      []float64           // yearly probabilities
+	Band        []market.Interval   // what the quotes alone allow of g there
+	Opened      float64             // by how much, relatively, the quotes had to be opened for any curve to exist
+	Resampled   []market.Interval   // what nine in ten resampled curves ask there; nil with fewer than three quotes
 }
 
 // Fitted is the answer of the verb fit.
@@ -110,7 +120,8 @@ type GrossFigures struct {
 type Difference struct {
 	Programme string
 	Against   string
-	TotalCost optimize.Estimate // money per year, negative = cheaper
+	TotalCost optimize.Estimate // money per year, negative = cheaper; the error is the simulation's
+	Prices    float64           // standard error of the difference that comes from the quotes
 }
 
 // Searched is the answer of the verb search.

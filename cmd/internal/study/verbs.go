@@ -81,10 +81,13 @@ func (s *Study) classLook(c loss.Class, index int) ClassLook {
 }
 
 // Fit gives the curves and how they were fitted.
-func (s *Study) Fit(context.Context) (Fitted, error) {
+func (s *Study) Fit(ctx context.Context) (Fitted, error) {
 	if len(s.curves) == 0 {
 		at := s.settings.At(fault.Fault{Key: "market.curves", Found: "no curve", Allowed: "at least one, to be fitted"})
 		return Fitted{}, &at
+	}
+	if err := s.deepen(ctx); err != nil {
+		return Fitted{}, err
 	}
 	return Fitted{Head: s.head, Curves: s.curves}, nil
 }
@@ -136,7 +139,7 @@ func (s *Study) appraised(all []optimize.Appraisal) Appraised {
 	against := s.reference(all)
 	for _, p := range all {
 		if p.Programme.Name != against.Programme.Name {
-			a.Differences = append(a.Differences, Difference{p.Programme.Name, against.Programme.Name, optimize.CompareCost(p, against)})
+			a.Differences = append(a.Differences, Difference{p.Programme.Name, against.Programme.Name, optimize.CompareCost(p, against), optimize.ComparePrices(p, against)})
 		}
 	}
 	return a
@@ -177,6 +180,9 @@ func (s *Study) Search(ctx context.Context, o SearchOptions) (Searched, error) {
 	result, err := optimize.Search(ctx, s.appraiser, space, s.searchSettings(*set, o))
 	if err != nil {
 		return Searched{}, s.placed(err)
+	}
+	if err := s.deepen(context.WithoutCancel(ctx)); err != nil {
+		return Searched{}, err
 	}
 	programmes := append([]treaty.Programme{{Name: settings.NoCover}}, s.programmes...)
 	all, err := optimize.AppraiseAll(s.appraiser, programmes, s.options.Workers, nil)
