@@ -77,9 +77,9 @@ func describe(s optimize.Progress) string {
 	case s.Phase == "detail":
 		return fmt.Sprintf("errors and reliefs: programme %d of %d", s.Done, s.Total)
 	case s.Total == 0:
-		return fmt.Sprintf("%s: round %d, %d programmes appraised, %s", s.Phase, s.Done, s.Evaluations, best)
+		return fmt.Sprintf("%s: round %d, %s appraised, %s", s.Phase, s.Done, report.Count(s.Evaluations, "programme", "programmes"), best)
 	}
-	return fmt.Sprintf("%s: %d of at most %d, %d programmes appraised, %s", s.Phase, s.Done, s.Total, s.Evaluations, best)
+	return fmt.Sprintf("%s: %d of at most %d, %s appraised, %s", s.Phase, s.Done, s.Total, report.Count(s.Evaluations, "programme", "programmes"), best)
 }
 
 // show moves the bar of a phase.

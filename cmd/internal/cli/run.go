@@ -26,7 +26,18 @@ const (
 type usageError struct{ error }
 
 // Run runs the command with these arguments and gives its exit code. It prints results to stdout, all else to stderr, and never panics.
-func Run(ctx context.Context, args []string, stdout, stderr io.Writer) (code int) {
+func Run(ctx context.Context, args []string, stdout, stderr io.Writer) int {
+	return guarded(stderr, func() int {
+		root := command(stdout, stderr)
+		root.SetArgs(args)
+		root.SetOut(stdout)
+		root.SetErr(stderr)
+		return tell(stderr, root.ExecuteContext(ctx))
+	})
+}
+
+// guarded runs a function and turns its panic into a short message and the exit code of a failure.
+func guarded(stderr io.Writer, run func() int) (code int) {
 	defer func() {
 		if cause := recover(); cause != nil {
 			fmt.Fprintf(stderr, "cedewright: internal error%s: %v\n", whereFrom(), cause)
@@ -34,12 +45,7 @@ func Run(ctx context.Context, args []string, stdout, stderr io.Writer) (code int
 			code = failed
 		}
 	}()
-	root := command(ctx, stdout, stderr)
-	root.SetArgs(args)
-	root.SetOut(stdout)
-	root.SetErr(stderr)
-	err := root.ExecuteContext(ctx)
-	return tell(stderr, err)
+	return run()
 }
 
 // whereFrom names the place in this program where a panic began; it is called while the panic is being recovered.
@@ -82,12 +88,14 @@ func tell(stderr io.Writer, err error) int {
 		fmt.Fprintln(stderr, "cedewright: interrupted before there was a result; nothing was written")
 		return failed
 	}
-	fmt.Fprintf(stderr, "cedewright: %v\n", err)
+	for _, line := range strings.Split(err.Error(), "\n") { // errors may be joined
+		fmt.Fprintf(stderr, "cedewright: %s\n", line)
+	}
 	return failed
 }
 
 // command builds the tree of commands.
-func command(ctx context.Context, stdout, stderr io.Writer) *cobra.Command {
+func command(stdout, stderr io.Writer) *cobra.Command {
 	root := &cobra.Command{
 		Use:   "cedewright",
 		Short: "Decide an insurer's reinsurance programme: what to buy, what it costs, what capital it frees",

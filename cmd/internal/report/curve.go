@@ -60,7 +60,7 @@ func curvePicture(f study.CurveFit) string {
 		c.residuals(quoted, low)
 	}
 	return c.svg("Market curve "+f.Curve.Name+": "+f.Curve.Distortion.String(),
-		fmt.Sprintf("Price of a thin layer by the probability that it is hit, %s", count(len(quoted), "quote", "quotes")))
+		fmt.Sprintf("Price of a thin layer by the probability that it is hit, %s", Count(len(quoted), "quote", "quotes")))
 }
 
 const probabilityLabel = "yearly probability that the layer is hit"

@@ -2,8 +2,10 @@ package report
 
 import (
 	"fmt"
+	"slices"
 
 	"cedewright/cmd/internal/study"
+	"cedewright/market"
 	"cedewright/optimize"
 	"cedewright/portfolio/treaty"
 )
@@ -42,6 +44,12 @@ func figureGroups(a study.Appraised, all []optimize.Appraisal) []figureGroup {
 		money("− expected recoveries", func(p optimize.Appraisal) optimize.Estimate { return p.ExpectedRecoveries }),
 		total(money("= ceded margin", func(p optimize.Appraisal) optimize.Estimate { return p.CededMargin })),
 	}}}
+	fromQuotes := func(g *figureGroup, read func(optimize.Appraisal) float64) {
+		if slices.ContainsFunc(all, func(p optimize.Appraisal) bool { return read(p) > 0 }) {
+			g.rows = append(g.rows, row("error from few quotes", func(p optimize.Appraisal) string { return priceError(read(p), u) }))
+		}
+	}
+	fromQuotes(&groups[0], func(p optimize.Appraisal) float64 { return p.MarginPriceError })
 	for i, c := range all[0].Capital {
 		g := figureGroup{"Capital under the standard “" + c.Standard + "”", []figureRow{
 			money("required capital", func(p optimize.Appraisal) optimize.Estimate { return p.Capital[i].Net }),
@@ -62,6 +70,7 @@ func figureGroups(a study.Appraised, all []optimize.Appraisal) []figureGroup {
 		money("+ capital cost at "+Percent(a.CostOfCapital), func(p optimize.Appraisal) optimize.Estimate { return p.CapitalCost }),
 		total(money("= total cost", func(p optimize.Appraisal) optimize.Estimate { return p.TotalCost })),
 	}}
+	fromQuotes(&cost, func(p optimize.Appraisal) float64 { return p.CostPriceError })
 	if len(a.Differences) > 0 {
 		cost.rows = append(cost.rows, row("difference to "+a.Differences[0].Against, func(p optimize.Appraisal) string {
 			if d, ok := difference(a, p.Programme.Name); ok {
@@ -77,6 +86,14 @@ func figureGroups(a study.Appraised, all []optimize.Appraisal) []figureGroup {
 		money("1 in 10", func(p optimize.Appraisal) optimize.Estimate { return p.NetResult.OneIn10 }),
 		money("1 in 200", func(p optimize.Appraisal) optimize.Estimate { return p.NetResult.OneIn200 }),
 	}})
+}
+
+// priceError writes an error that comes from the quotes, as a cell that holds no figure but an error.
+func priceError(x float64, u unit) string {
+	if !(x > 0) || !finite(x) {
+		return "–"
+	}
+	return plusMinus + fixed(x/u.factor, decimals(x/u.factor)) + u.suffix
 }
 
 func unitOfProgrammes(all []optimize.Appraisal) unit {
@@ -147,6 +164,12 @@ func termsOf(f optimize.TreatyFigure) string {
 	}
 	if by != "" {
 		text += "; priced by " + by
+	}
+	if f.Reliance == market.Extrapolated || f.Reliance == market.Assumed {
+		text += " (" + f.Reliance.String() + ")"
+	}
+	if e := priceError(f.PriceError, unitFor(max(f.Premium.Value, f.PriceError))); e != "–" {
+		text += "," + e + " from few quotes"
 	}
 	return clean(text)
 }

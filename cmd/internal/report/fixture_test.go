@@ -58,6 +58,7 @@ func (s sketch) appraisal() optimize.Appraisal {
 	if r := a.Capital[0].Relief.Value; r > 0 {
 		a.Rent, a.RentDefined = est(a.CededMargin.Value/r, 0.005), true
 	}
+	a.MarginPriceError, a.CostPriceError = 0.031*a.CededMargin.Value, 0.033*a.CededMargin.Value
 	a.NetResult = optimize.NetResult{Mean: est(81.2e6-a.CededMargin.Value, 0.3e6), StandardDeviation: s.sd, OneIn10: est(s.oneIn10, 0.7e6), OneIn200: est(-s.net.Value, s.net.StandardError)}
 	return a
 }
@@ -78,8 +79,18 @@ func layer(name string, kind treaty.Kind, retention, limit, share, premium, reco
 	return optimize.TreatyFigure{
 		Terms: t, Premium: est(premium, premium/60), BasePremium: premium / share, RateOnLine: premium / share / limit, ReinstatementPremium: est(reinstated, reinstated/50),
 		ExpectedRecovery: est(recovery, recovery/40), Margin: est(premium+reinstated-recovery, (premium-recovery)/50), Relief: est(relief, 3e6),
-		AttachmentProbability: est(attaches, math.Sqrt(attaches/1e5)), ExhaustionProbability: est(exhausts, math.Sqrt(exhausts/1e5)), PricedBy: "curve " + t.Curve,
+		AttachmentProbability: est(attaches, math.Sqrt(attaches/1e5)), ExhaustionProbability: est(exhausts, math.Sqrt(exhausts/1e5)), PricedBy: "curve " + t.Curve, PriceError: 0.03 * premium, Reliance: relianceOf(t, exhausts),
 	}
+}
+
+func relianceOf(t treaty.Treaty, exhausts float64) market.Reliance {
+	switch {
+	case t.Kind == treaty.AggregateExcess:
+		return market.Assumed
+	case exhausts < 0.0015:
+		return market.Extrapolated
+	}
+	return market.Interpolated
 }
 
 func share(name string, cession, premium, commission, recovery float64) optimize.TreatyFigure {

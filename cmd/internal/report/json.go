@@ -113,6 +113,7 @@ func programme(a optimize.Appraisal) object {
 			{"ceded_margin", number(a.CededMargin.StandardError)}, {"capital_cost", number(a.CapitalCost.StandardError)},
 			{"total_cost", number(a.TotalCost.StandardError)}, {"rent", rentError},
 		}},
+		{"errors_from_quotes", object{{"ceded_margin", number(a.MarginPriceError)}, {"total_cost", number(a.CostPriceError)}}},
 		{"treaties", objects(a.Treaties, treatyJSON)},
 	}
 }
@@ -134,8 +135,12 @@ func treatyJSON(f optimize.TreatyFigure) object {
 	if t.Kind == treaty.RiskExcess && t.EventLimit > 0 {
 		o = append(o, field{"event_limit", number(t.EventLimit)})
 	}
+	reliance := any(nil)
+	if f.Reliance != 0 {
+		reliance = f.Reliance.String()
+	}
 	return append(o, object{
-		{"priced_by", f.PricedBy}, {"premium", number(f.Premium.Value)}, {"base_premium", number(f.BasePremium)}, {"rate_on_line", number(f.RateOnLine)},
+		{"priced_by", f.PricedBy}, {"reliance", reliance}, {"error_from_quotes", number(f.PriceError)}, {"premium", number(f.Premium.Value)}, {"base_premium", number(f.BasePremium)}, {"rate_on_line", number(f.RateOnLine)},
 		{"reinstatement_premium", number(f.ReinstatementPremium.Value)}, {"commission", number(f.Commission)}, {"expected_recovery", number(f.ExpectedRecovery.Value)},
 		{"attachment_probability", number(f.AttachmentProbability.Value)}, {"exhaustion_probability", number(f.ExhaustionProbability.Value)},
 		{"margin", number(f.Margin.Value)}, {"relief", number(f.Relief.Value)},

@@ -266,8 +266,8 @@ func estimatedPeriod(e optimize.Estimate) string {
 	return "1 in " + fixed(period.Value, places)
 }
 
-// count gives "1 treaty" and "3 treaties".
-func count(n int, one, many string) string {
+// Count gives "1 treaty" and "3 treaties".
+func Count(n int, one, many string) string {
 	if n == 1 {
 		return "1 " + one
 	}

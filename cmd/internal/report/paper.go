@@ -85,7 +85,7 @@ func Paper(w io.Writer, s study.Searched, run []Setting) error {
 		towers, scales = towers[1:], scales[min(1, len(scales)):]
 	}
 	v := paperView{
-		Title: clean(s.Title), Subtitle: fmt.Sprintf("Renewal of reinsurance: the programme to buy. All money in %s; %s.", clean(s.Currency), count(s.Years, "simulated year", "simulated years")),
+		Title: clean(s.Title), Subtitle: fmt.Sprintf("Renewal of reinsurance: the programme to buy. All money in %s; %s.", clean(s.Currency), Count(s.Years, "simulated year", "simulated years")),
 		Recommendation: unbroken(Recommendation(s)), Tiles: tiles(s), Best: len(named),
 		// These are built by this package from escaped parts.
 		Style:      template.CSS(colours(":root") + pictureStyle),
@@ -94,7 +94,7 @@ func Paper(w io.Writer, s study.Searched, run []Setting) error {
 		Exceedance: template.HTML(exceedancePicture(s)),
 		Capital:    template.HTML(capitalPicture(s)),
 
-		FrontierTable: frontierTable(s), FrontierCount: count(len(s.Result.Frontier), "programme", "programmes"),
+		FrontierTable: frontierTable(s), FrontierCount: Count(len(s.Result.Frontier), "programme", "programmes"),
 		QuotaShares: quotaShares(towers),
 		Keep:        keepWords(s.Keep), Warnings: s.Warnings, Notes: s.Notes, LeftOut: leftOut, Caution: Caution, Inputs: s.Inputs, Settings: run,
 	}

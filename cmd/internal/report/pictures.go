@@ -54,7 +54,7 @@ func frontierPicture(s study.Searched) string {
 	}
 	for _, p := range front {
 		c.mark("front-point", "dot", p.Capital[0].Relief.Value, p.CededMargin.Value,
-			fmt.Sprintf("%s: relief %s, margin %s, rent %s", count(len(p.Treaties), "treaty", "treaties"), Estimated(p.Capital[0].Relief), Estimated(p.CededMargin), rent(p)))
+			fmt.Sprintf("%s: relief %s, margin %s, rent %s", Count(len(p.Treaties), "treaty", "treaties"), Estimated(p.Capital[0].Relief), Estimated(p.CededMargin), rent(p)))
 	}
 	var labels []label
 	for i := len(named) - 1; i >= 0; i-- {
@@ -72,7 +72,7 @@ func frontierPicture(s study.Searched) string {
 	c.labels(append(labels, ray...))
 	return c.svg("Least ceded margin for each capital relief",
 		fmt.Sprintf("%s on the frontier; the best found frees %s for a margin of %s a year. Below the dashed line relief costs less than own capital.",
-			count(len(front), "programme", "programmes"), Estimated(s.Result.Best.Capital[0].Relief), Estimated(s.Result.Best.CededMargin)))
+			Count(len(front), "programme", "programmes"), Estimated(s.Result.Best.Capital[0].Relief), Estimated(s.Result.Best.CededMargin)))
 }
 
 // ownCapital shades where relief costs less than the cost of own capital and draws the border; it gives the border's label.
@@ -155,7 +155,7 @@ func capitalPicture(s study.Searched) string {
 		}
 		y += 6
 	}
-	return c.svg("Required capital by standard", fmt.Sprintf("Bars for %s under %s, one standard error to each side.", count(len(named), "programme", "programmes"), count(len(standards), "standard", "standards")))
+	return c.svg("Required capital by standard", fmt.Sprintf("Bars for %s under %s, one standard error to each side.", Count(len(named), "programme", "programmes"), Count(len(standards), "standard", "standards")))
 }
 
 // CurvePictures gives a file for the picture of each curve.

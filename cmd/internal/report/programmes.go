@@ -10,7 +10,7 @@ import (
 
 func printHead(w io.Writer, s Style, h study.Head, what string) {
 	fmt.Fprintln(w, s.in(bold, clean(h.Title)))
-	fmt.Fprintf(w, "%s; %s, %s, seed of the book %d\n\n", what, clean(h.Currency), count(h.Years, "simulated year", "simulated years"), h.Seed)
+	fmt.Fprintf(w, "%s; %s, %s, seed of the book %d\n\n", what, clean(h.Currency), Count(h.Years, "simulated year", "simulated years"), h.Seed)
 }
 
 func printFoot(w io.Writer, s Style, h study.Head) {
@@ -140,7 +140,7 @@ func printFrontier(w io.Writer, s Style, found study.Searched) {
 		return
 	}
 	places := excerpt(len(front), frontierShown)
-	g := newGrid(fmt.Sprintf("Frontier: the least ceded margin for each capital relief, %d of %s", len(places), count(len(front), "programme", "programmes")), frontierHead...)
+	g := newGrid(fmt.Sprintf("Frontier: the least ceded margin for each capital relief, %d of %s", len(places), Count(len(front), "programme", "programmes")), frontierHead...)
 	g.left[0] = false
 	u := unitOfProgrammes(front)
 	for _, i := range places {

@@ -21,7 +21,7 @@ var leftOut = []string{
 	"Reinsurers are taken to pay in full and at once: neither default nor dispute nor delay is priced.",
 	"Market prices come from a curve fitted to quotes, or from quotes in the study; capacity, relationships and the wordings behind them are not modelled.",
 	"Reinstatement premiums are pro rata as to amount, without brokerage and without a time factor.",
-	"Standard errors are those of the simulation alone. Whether the models of loss and the market curve are right they do not say.",
+	"Standard errors (±) are those of the simulation alone; what few quotes leave open is shown beside them where it is known. Whether the models of loss and the kind of market curve are right neither says.",
 	"The best programme was chosen on the same simulated years on which its figures are shown, which flatters it a little.",
 }
 
@@ -61,7 +61,7 @@ func whatToBuy(s study.Searched) string {
 		verb, name = "Keep", s.Start.Programme.Name
 	}
 	text := fmt.Sprintf("%s “%s”: %s for %s %s of premium a year, which costs a margin of %s a year and frees %s of required capital (%s)",
-		verb, name, count(len(best.Programme.Treaties), "treaty", "treaties"), s.Currency, Estimated(best.CededPremium), Estimated(best.CededMargin),
+		verb, name, Count(len(best.Programme.Treaties), "treaty", "treaties"), s.Currency, Estimated(best.CededPremium), Estimated(best.CededMargin),
 		Estimated(best.Capital[0].Relief), best.Capital[0].Standard)
 	if best.RentDefined {
 		text += fmt.Sprintf(", a rent of %s against a cost of capital of %s", EstimatedPercent(best.Rent), Percent(s.CostOfCapital))
@@ -108,8 +108,8 @@ func change(s study.Searched) string {
 
 // searchWords says what was searched, how long, and why it ended.
 func searchWords(s study.Searched) string {
-	text := fmt.Sprintf("Searched: %s; %s appraised in %s, seed %d; %s", s.Space, count(s.Result.Evaluations, "programme", "programmes"),
-		count(s.Result.Generations, "generation", "generations"), s.Result.Seed, s.Result.Status)
+	text := fmt.Sprintf("Searched: %s; %s appraised in %s, seed %d; %s", s.Space, Count(s.Result.Evaluations, "programme", "programmes"),
+		Count(s.Result.Generations, "generation", "generations"), s.Result.Seed, s.Result.Status)
 	if s.Result.Polished && s.Result.Status != optimize.Proven {
 		text += "; no single move on the steps improves the best"
 	}
