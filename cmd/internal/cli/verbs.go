@@ -116,7 +116,7 @@ func runVerb(ctx context.Context, v verb, c *cobra.Command, path string, stdout,
 	}
 	p := newProgress(stderr, quiet)
 	defer p.close()
-	s, err := study.Open(ctx, path, study.Options{Workers: r.Workers, Progress: p.stage})
+	s, err := study.Open(ctx, path, study.Options{Workers: r.Workers, Scenario: r.Scenario, Progress: p.stage})
 	if err != nil {
 		return err
 	}
