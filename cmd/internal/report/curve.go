@@ -3,6 +3,8 @@ package report
 import (
 	"fmt"
 	"math"
+	"slices"
+	"strings"
 
 	"cedewright/cmd/internal/study"
 	"cedewright/market"
@@ -33,6 +35,8 @@ func curvePicture(f study.CurveFit) string {
 		across.label = probabilityLabel
 	}
 	c := newChart(pictureWidth, height, room, across, up)
+	c.band("allowed", f.BandAt, f.Band, low)
+	c.band("resampled", f.BandAt, f.Resampled, low)
 	c.curve("diagonal", []float64{low, 1}, []float64{low, 1})
 	for _, part := range []struct {
 		class    string
@@ -61,6 +65,24 @@ func curvePicture(f study.CurveFit) string {
 	}
 	return c.svg("Market curve "+f.Curve.Name+": "+f.Curve.Distortion.String(),
 		fmt.Sprintf("Price of a thin layer by the probability that it is hit, %s", Count(len(quoted), "quote", "quotes")))
+}
+
+// band fills the area between the ends of intervals, from a probability on.
+func (c *chart) band(class string, at []float64, band []market.Interval, low float64) {
+	if len(band) != len(at) || len(band) == 0 {
+		return
+	}
+	var there, back []string
+	for i, s := range at {
+		if s < low {
+			continue
+		}
+		x := place(c.x.at(s))
+		there = append(there, x+","+place(c.y.at(band[i].High)))
+		back = append(back, x+","+place(c.y.at(max(band[i].Low, c.y.low))))
+	}
+	slices.Reverse(back)
+	fmt.Fprintf(&c.body, `<polygon class="%s" points="%s"/>`, class, strings.Join(append(there, back...), " "))
 }
 
 const probabilityLabel = "yearly probability that the layer is hit"

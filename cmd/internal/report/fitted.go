@@ -4,6 +4,8 @@ import (
 	"fmt"
 	"io"
 	"math"
+	"slices"
+	"strings"
 
 	"cedewright/cmd/internal/study"
 	"cedewright/market"
@@ -18,14 +20,18 @@ func PrintFitted(w io.Writer, f study.Fitted, s Style) {
 		if c.Chosen == nil {
 			wrapped(w, "Set by hand in the study; no quote stands behind it.", "", s.width())
 			fmt.Fprintln(w)
-			printPoints(w, s, c.Curve)
+			printPoints(w, s, c)
 			continue
 		}
 		printTable(w, s, quoteTable(c.Chosen))
 		wrapped(w, quoteWords(c.Chosen), "", s.width())
 		fmt.Fprintln(w)
 		printTable(w, s, candidateTable(c))
-		printPoints(w, s, c.Curve)
+		for _, text := range choiceWords(c) {
+			wrapped(w, text, "", s.width())
+		}
+		fmt.Fprintln(w)
+		printPoints(w, s, c)
 	}
 	printFoot(w, s, f.Head)
 }
@@ -112,20 +118,72 @@ func candidateTable(c study.CurveFit) textTable {
 		if c.Chosen != nil && f.Family == c.Chosen.Family {
 			note = "chosen"
 		}
+		if f == c.Recommended {
+			note = strings.TrimPrefix(note+", recommended", ", ")
+		}
 		t.Rows = append(t.Rows, []string{f.Family, parameter, percentTo(f.InSample, 1, false), percentTo(f.LeaveOneOut, 1, false), note})
 	}
 	return t
 }
 
-func printPoints(w io.Writer, s Style, c market.Curve) {
+// choiceWords says what is recommended and whether one curve can price all quotes.
+func choiceWords(c study.CurveFit) []string {
+	var list []string
+	if c.Recommended != nil {
+		list = append(list, fmt.Sprintf("Recommended: %s; %s.", c.Recommended.Distortion, c.Reason))
+	}
+	if k := c.Consistency; k != nil {
+		list = append(list, consistencyWords(*k))
+	}
+	return list
+}
+
+// consistencyWords names the quotes at fault, if any, and what it would take.
+func consistencyWords(k market.Consistency) string {
+	if k.Consistent {
+		return "One increasing concave curve can price all quotes within their bid and offer."
+	}
+	changes := func(list []market.Change) string {
+		var parts []string
+		for _, c := range list {
+			if c.Relative != 0 {
+				parts = append(parts, fmt.Sprintf("%s %s", c.Quote.Name, percentTo(c.Relative, 1, true)))
+			}
+		}
+		return joined(parts)
+	}
+	return fmt.Sprintf("No one increasing concave curve prices all quotes within their bid and offer. The least change in sum that would let one: %s. The least change of the worst: every quote within %s. "+
+		"That is no error in itself: different perils may rightly need different curves, and quotes move.", changes(k.LeastTotal), percentTo(k.Worst, 1, false))
+}
+
+func printPoints(w io.Writer, s Style, c study.CurveFit) {
 	g := newGrid("Price of a thin layer by how often it is hit, over its limit, before brokerage", "hit")
-	price, multiple := []string{"price"}, []string{"over probability"}
+	price, multiple, resampled, allowed := []string{"price"}, []string{"over probability"}, []string{"nine in ten resampled"}, []string{"quotes alone allow"}
 	for _, period := range []float64{500, 200, 100, 50, 20, 10, 5, 2} {
-		at := c.Distortion.At(1 / period)
+		at := c.Curve.Distortion.At(1 / period)
 		g.head = append(g.head, fmt.Sprintf("1 in %v", period))
 		price, multiple = append(price, percentTo(at, 2, false)), append(multiple, fixed(at*period, 2))
+		resampled, allowed = append(resampled, between(c.BandAt, c.Resampled, 1/period)), append(allowed, between(c.BandAt, c.Band, 1/period))
 	}
 	g.add(price...)
 	g.add(multiple...)
+	if c.Resampled != nil {
+		g.add(resampled...)
+	}
+	if c.Band != nil {
+		g.add(allowed...)
+	}
 	g.print(w, s)
+}
+
+// between reads a band at a probability, straight on the scales of the picture.
+func between(at []float64, band []market.Interval, s float64) string {
+	k, _ := slices.BinarySearch(at, s)
+	if len(band) != len(at) || k == 0 || k == len(at) {
+		return "–"
+	}
+	share := math.Log(s/at[k-1]) / math.Log(at[k]/at[k-1])
+	mix := func(a, b float64) float64 { return a * math.Pow(b/a, share) }
+	digits := func(x float64) string { return strings.TrimSuffix(percentTo(x, 1, false), " %") }
+	return digits(mix(band[k-1].Low, band[k].Low)) + "–" + digits(mix(band[k-1].High, band[k].High)) + " %"
 }

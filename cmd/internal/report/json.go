@@ -72,7 +72,7 @@ func appraised(a study.Appraised) object {
 		}},
 		{"programmes", objects(a.Programmes, programme)},
 		{"differences", objects(a.Differences, func(d study.Difference) object {
-			return object{{"programme", d.Programme}, {"against", d.Against}, {"total_cost", number(d.TotalCost.Value)}, {"standard_error", number(d.TotalCost.StandardError)}}
+			return object{{"programme", d.Programme}, {"against", d.Against}, {"total_cost", number(d.TotalCost.Value)}, {"standard_error", number(d.TotalCost.StandardError)}, {"error_from_quotes", number(d.Prices)}}
 		})},
 	}
 }
@@ -192,7 +192,29 @@ func curveJSON(c study.CurveFit) object {
 	if c.Chosen != nil {
 		o = append(o, field{"chosen", fitJSON(c.Chosen)})
 	}
+	if c.Recommended != nil {
+		o = append(o, field{"recommended", c.Recommended.Distortion.String()}, field{"reason", c.Reason})
+		if c.Consistency != nil {
+			o = append(o, field{"consistency", consistencyJSON(*c.Consistency)})
+		}
+		o = append(o, field{"band", object{{"probabilities", numbers(c.BandAt)}, {"resampled", intervals(c.Resampled)}, {"allowed_by_quotes", intervals(c.Band)}, {"opened", number(c.Opened)}}})
+	}
 	return append(o, field{"candidates", objects(c.Candidates, fitJSON)})
+}
+
+// consistencyJSON writes whether one curve can price all quotes, and the changes that would let one.
+func consistencyJSON(k market.Consistency) object {
+	change := func(c market.Change) object {
+		return object{{"quote", c.Quote.Name}, {"relative", number(c.Relative)}, {"rate_on_line", number(c.Rate)}}
+	}
+	return object{
+		{"consistent", k.Consistent}, {"least_total", number(k.Total)}, {"least_total_changes", objects(k.LeastTotal, change)},
+		{"least_worst", number(k.Worst)}, {"least_worst_changes", objects(k.LeastWorst, change)},
+	}
+}
+
+func intervals(list []market.Interval) []object {
+	return objects(list, func(i market.Interval) object { return object{{"low", number(i.Low)}, {"high", number(i.High)}} })
 }
 
 func fitJSON(f *market.Fit) object {
