@@ -53,6 +53,11 @@ func TestWrongUsage(t *testing.T) {
 		{[]string{"look", small, small}, "look takes one study, not 2"},
 		{[]string{"look", "--jsn", small}, "unknown flag --jsn; did you mean --json?"},
 		{[]string{"look", "--workers", "x", small}, "--workers"},
+		{[]string{"--jsn", "look", small}, "unknown flag --jsn; flags stand behind the verb"},
+		{[]string{"look", "-x", small}, "unknown shorthand flag: 'x' in -x; see cedewright look --help"},
+		{[]string{"search", small, "--out"}, "flag needs an argument: --out; see cedewright search --help"},
+		{[]string{"appraise", small, "--generations", "3"}, "unknown flag --generations; see cedewright appraise --help"},
+		{[]string{"help", "serch"}, `no verb is named "serch"`},
 		{[]string{"look", filepath.Join(folder, "none.yaml")}, "none.yaml"},
 		{[]string{"look", write("empty.yaml", "\n")}, "the file is empty"},
 		{[]string{"look", write("binary.yaml", "\x00\x01")}, "binary"},
@@ -105,6 +110,36 @@ func TestVerbs(t *testing.T) {
 		t.Errorf("a quiet run says %q", stderr)
 	}
 	if code, stdout, _ := call(context.Background(), "--version"); code != done || !strings.HasPrefix(stdout, "cedewright ") {
+		t.Errorf("version: exit %d, %q", code, stdout)
+	}
+}
+
+func TestHelp(t *testing.T) {
+	for _, args := range [][]string{nil, {"--help"}, {"help"}} {
+		code, stdout, stderr := call(context.Background(), args...)
+		if code != done || stderr != "" || !strings.Contains(stdout, "cedewright VERB STUDY") || !strings.Contains(stdout, "not a regulatory filing") {
+			t.Errorf("%q: exit %d, %s%s", args, code, stdout, stderr)
+		}
+		last := -1
+		for _, v := range verbs {
+			at := strings.Index(stdout, "\n  "+v.name)
+			if at <= last {
+				t.Errorf("%q: the verb %s is out of its order:\n%s", args, v.name, stdout)
+			}
+			last = at
+		}
+		for _, line := range strings.Split(stdout, "\n") {
+			if len(line) > 120 {
+				t.Errorf("%q: a line of %d letters: %s", args, len(line), line)
+			}
+		}
+	}
+	for _, args := range [][]string{{"help", "search"}, {"search", "--help"}} {
+		if code, stdout, _ := call(context.Background(), args...); code != done || !strings.Contains(stdout, "--patience") {
+			t.Errorf("%q: exit %d, %s", args, code, stdout)
+		}
+	}
+	if code, stdout, _ := call(context.Background(), "version"); code != done || !strings.HasPrefix(stdout, "cedewright ") {
 		t.Errorf("version: exit %d, %q", code, stdout)
 	}
 }

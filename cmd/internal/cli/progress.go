@@ -82,6 +82,17 @@ func describe(s optimize.Progress) string {
 	return fmt.Sprintf("%s: %d of at most %d, %s appraised, %s", s.Phase, s.Done, s.Total, report.Count(s.Evaluations, "programme", "programmes"), best)
 }
 
+// inShort leaves out what the bar shows.
+func inShort(s optimize.Progress) string {
+	switch {
+	case s.Phase == "detail":
+		return "errors and reliefs"
+	case !s.Feasible:
+		return fmt.Sprintf("%s, %s, nothing feasible yet", s.Phase, report.Count(s.Evaluations, "programme", "programmes"))
+	}
+	return fmt.Sprintf("%s, %s, best %s", s.Phase, report.Count(s.Evaluations, "programme", "programmes"), report.Money(s.TotalCost))
+}
+
 // show moves the bar of a phase.
 func (p *progress) show(s optimize.Progress) {
 	if p.bars == nil {
@@ -91,7 +102,7 @@ func (p *progress) show(s optimize.Progress) {
 		p.finishBar()
 		p.phase = s.Phase
 		decorators := []decor.Decorator{decor.Any(func(decor.Statistics) string {
-			return " " + describe(*p.last.Load())
+			return " " + inShort(*p.last.Load())
 		})}
 		if s.Total > 0 {
 			decorators = append(decorators, decor.OnComplete(decor.AverageETA(decor.ET_STYLE_MMSS, decor.WC{W: 7}), ""), decor.Name(" left at most"))

@@ -97,15 +97,13 @@ func tell(stderr io.Writer, err error) int {
 // command builds the tree of commands.
 func command(stdout, stderr io.Writer) *cobra.Command {
 	root := &cobra.Command{
-		Use:   "cedewright",
-		Short: "Decide an insurer's reinsurance programme: what to buy, what it costs, what capital it frees",
-		Long: "cedewright reads one study of a reinsurance renewal (losses, quotes, programmes, capital standards) and says what each\n" +
-			"programme costs and frees, and which one of a decision space is best.\n\n" + report.Caution,
+		Use:           "cedewright VERB STUDY",
 		SilenceErrors: true, SilenceUsage: true,
 		Version: report.Version(),
 		Args:    unknownVerb,
-		RunE:    func(c *cobra.Command, _ []string) error { return c.Help() },
+		Run:     func(*cobra.Command, []string) { rootHelp(stdout) },
 	}
+	setHelp(root, stdout)
 	root.SetVersionTemplate("{{.Version}}\n")
 	root.CompletionOptions.HiddenDefaultCmd = true
 	root.SetFlagErrorFunc(func(c *cobra.Command, err error) error { return usageError{unknownFlag(c, err)} })
@@ -126,47 +124,4 @@ func command(stdout, stderr io.Writer) *cobra.Command {
 		root.AddCommand(one)
 	}
 	return root
-}
-
-func oneStudy(c *cobra.Command, args []string) error {
-	switch len(args) {
-	case 1:
-		return nil
-	case 0:
-		return usageError{fmt.Errorf("%s needs the path of a study, such as configs/marram-coast.yaml", c.Name())}
-	}
-	return usageError{fmt.Errorf("%s takes one study, not %d: %q", c.Name(), len(args), args)}
-}
-
-func unknownVerb(_ *cobra.Command, args []string) error {
-	if len(args) == 0 {
-		return nil
-	}
-	names := make([]string, len(verbs))
-	for i, v := range verbs {
-		names[i] = v.name
-	}
-	text := fmt.Sprintf("no verb is named %q; there are %s", args[0], strings.Join(names, ", "))
-	if near := fault.Nearest(args[0], names); near != "" {
-		text += fmt.Sprintf("; did you mean %q?", near)
-	}
-	return usageError{errors.New(text)}
-}
-
-// unknownFlag adds the nearest flag to pflag's message.
-func unknownFlag(c *cobra.Command, err error) error {
-	name, ok := strings.CutPrefix(err.Error(), "unknown flag: --")
-	if !ok {
-		return err
-	}
-	var names []string
-	for _, field := range strings.Fields(c.Flags().FlagUsages()) {
-		if flag, ok := strings.CutPrefix(field, "--"); ok {
-			names = append(names, flag)
-		}
-	}
-	if near := fault.Nearest(name, names); near != "" {
-		return fmt.Errorf("unknown flag --%s; did you mean --%s?", name, near)
-	}
-	return fmt.Errorf("unknown flag --%s; see cedewright %s --help", name, c.Name())
 }
