@@ -71,6 +71,7 @@ func appraised(a study.Appraised) object {
 			{"capital", objects(a.Gross.Capital, capitalJSON)}, {"net_result", resultJSON(a.Gross.Result)},
 		}},
 		{"programmes", objects(a.Programmes, programme)},
+		{"prices", pricesJSON(a)},
 		{"differences", objects(a.Differences, func(d study.Difference) object {
 			return object{{"programme", d.Programme}, {"against", d.Against}, {"total_cost", number(d.TotalCost.Value)}, {"standard_error", number(d.TotalCost.StandardError)}, {"error_from_quotes", number(d.Prices)}}
 		})},

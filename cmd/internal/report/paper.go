@@ -53,6 +53,7 @@ type curveSection struct {
 	Name, Words, Note  string
 	Picture            template.HTML
 	Quotes, Candidates textTable
+	Choice             []string
 }
 
 // paperView is what the template fills in.
@@ -68,6 +69,8 @@ type paperView struct {
 	Treaties                                     []treatyList
 	FrontierTable                                textTable
 	FrontierCount                                string
+	Prices                                       textTable
+	PricePictures                                template.HTML
 	Curves                                       []curveSection
 	Keep, Warnings, Notes, LeftOut               []string
 	Caution                                      string
@@ -111,6 +114,8 @@ func Paper(w io.Writer, s study.Searched, run []Setting) error {
 		}
 		v.Groups = append(v.Groups, group)
 	}
+	prices := pricesOf(s.Appraised, s.Result.Best.Programme.Name)
+	v.Prices, v.PricePictures = priceTable(prices), pricePanels(prices, s.Currency)
 	for _, c := range s.Curves {
 		v.Curves = append(v.Curves, curveOf(c))
 	}
@@ -187,6 +192,7 @@ func curveOf(c study.CurveFit) curveSection {
 		Note: "Set by hand in the study; no quote stands behind it."}
 	if c.Chosen != nil {
 		section.Quotes, section.Candidates, section.Note = quoteTable(c.Chosen), candidateTable(c), quoteWords(c.Chosen)
+		section.Choice = choiceWords(c)
 	}
 	return section
 }

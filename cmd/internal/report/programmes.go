@@ -30,8 +30,11 @@ func printFoot(w io.Writer, s Style, h study.Head) {
 func PrintAppraised(w io.Writer, a study.Appraised, s Style) {
 	printHead(w, s, a.Head, "Programmes side by side")
 	printSideBySide(w, s, a, a.Programmes, 0)
-	for _, p := range a.Programmes {
+	for i, p := range a.Programmes {
 		printTreaties(w, s, p)
+		if i < len(a.Prices) && len(a.Prices[i]) > 0 {
+			printTable(w, s, priceTable(a.Prices[i]))
+		}
 	}
 	printFoot(w, s, a.Head)
 }

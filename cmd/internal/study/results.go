@@ -103,8 +103,9 @@ type Appraised struct {
 	CostOfCapital float64
 	OwnFunds      float64
 	Gross         GrossFigures
-	Programmes    []optimize.Appraisal // first is "no cover"
-	Differences   []Difference         // of every later programme to the first named "expiring" or, without one, to no cover
+	Programmes    []optimize.Appraisal        // first is "no cover"
+	Prices        [][]optimize.ExplainedPrice // of each programme, in the same order
+	Differences   []Difference                // of every later programme to the first named "expiring" or, without one, to no cover
 }
 
 // GrossFigures is the position without any treaty; money per year.

@@ -99,7 +99,7 @@ func (s *Study) Appraise(context.Context) (Appraised, error) {
 	if err != nil {
 		return Appraised{}, s.placed(err)
 	}
-	return s.appraised(all), nil
+	return s.appraised(all)
 }
 
 // placed gives faults of pricing, whose key starts with a treaty's name, the place of that treaty in the study.
@@ -121,7 +121,7 @@ func (s *Study) placed(err error) error {
 	return faults.Err()
 }
 
-func (s *Study) appraised(all []optimize.Appraisal) Appraised {
+func (s *Study) appraised(all []optimize.Appraisal) (Appraised, error) {
 	none := all[0]
 	a := Appraised{
 		Head: s.head, CostOfCapital: s.appraiser.Case().CostOfCapital, OwnFunds: s.appraiser.Case().OwnFunds, Programmes: all,
@@ -142,7 +142,14 @@ func (s *Study) appraised(all []optimize.Appraisal) Appraised {
 			a.Differences = append(a.Differences, Difference{p.Programme.Name, against.Programme.Name, optimize.CompareCost(p, against), optimize.ComparePrices(p, against)})
 		}
 	}
-	return a
+	for _, p := range all {
+		prices, err := s.appraiser.Explain(p.Programme)
+		if err != nil {
+			return Appraised{}, err
+		}
+		a.Prices = append(a.Prices, prices)
+	}
+	return a, nil
 }
 
 // reference gives the programme against which others are compared: the one that the search starts from, or the first of the study, or no
@@ -190,7 +197,11 @@ func (s *Study) Search(ctx context.Context, o SearchOptions) (Searched, error) {
 		return Searched{}, s.placed(err)
 	}
 	all = append(all, result.Best)
-	found := Searched{Appraised: s.appraised(all), Result: result, NoCover: all[0], Curves: s.curves}
+	figures, err := s.appraised(all)
+	if err != nil {
+		return Searched{}, err
+	}
+	found := Searched{Appraised: figures, Result: result, NoCover: all[0], Curves: s.curves}
 	found.Start = s.reference(all)
 	found.Notes = append(found.Notes, result.Notes...)
 	found.Keep = space.Keep
