@@ -20,5 +20,10 @@ func clean(text string) string {
 	}, text)
 }
 
+// unbroken keeps a figure, its unit and its error on one line, by blanks that do not break.
+func unbroken(text string) string {
+	return strings.NewReplacer(" ± ", "\u00a0±\u00a0", " %", "\u00a0%").Replace(text)
+}
+
 // escape makes text safe inside XML and HTML.
 func escape(text string) string { return html.EscapeString(clean(text)) }

@@ -79,6 +79,12 @@ func figureGroups(a study.Appraised, all []optimize.Appraisal) []figureGroup {
 			return "–"
 		}))
 	}
+	if slices.ContainsFunc(a.Differences, func(d study.Difference) bool { return d.Prices > 0 }) {
+		cost.rows = append(cost.rows, row("error from few quotes", func(p optimize.Appraisal) string {
+			d, _ := difference(a, p.Programme.Name)
+			return priceError(d.Prices, u)
+		}))
+	}
 	cost.rows = append(cost.rows, row("rent (margin / relief)", rent))
 	return append(groups, cost, figureGroup{"Net result of a year", []figureRow{
 		money("expected", func(p optimize.Appraisal) optimize.Estimate { return p.NetResult.Mean }),

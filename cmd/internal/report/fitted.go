@@ -141,7 +141,7 @@ func choiceWords(c study.CurveFit) []string {
 // consistencyWords names the quotes at fault, if any, and what it would take.
 func consistencyWords(k market.Consistency) string {
 	if k.Consistent {
-		return "One increasing concave curve can price all quotes within their bid and offer."
+		return "A single increasing concave curve can price all quotes within their bid and offer."
 	}
 	changes := func(list []market.Change) string {
 		var parts []string
@@ -152,7 +152,7 @@ func consistencyWords(k market.Consistency) string {
 		}
 		return joined(parts)
 	}
-	return fmt.Sprintf("No one increasing concave curve prices all quotes within their bid and offer. The least change in sum that would let one: %s. The least change of the worst: every quote within %s. "+
+	return fmt.Sprintf("No single increasing concave curve prices all quotes within their bid and offer. The least change in sum that would let one: %s. The least change of the worst: every quote within %s. "+
 		"That is no error in itself: different perils may rightly need different curves, and quotes move.", changes(k.LeastTotal), percentTo(k.Worst, 1, false))
 }
 

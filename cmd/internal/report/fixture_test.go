@@ -144,7 +144,7 @@ func marramAppraised() study.Appraised {
 		Programmes: []optimize.Appraisal{none, expiring, higher},
 		Differences: []study.Difference{
 			{Programme: "no cover", Against: "expiring", TotalCost: est(none.TotalCost.Value-expiring.TotalCost.Value, 0.6e6)},
-			{Programme: "broker's proposal", Against: "expiring", TotalCost: est(higher.TotalCost.Value-expiring.TotalCost.Value, 0.5e6)},
+			{Programme: "broker's proposal", Against: "expiring", TotalCost: est(higher.TotalCost.Value-expiring.TotalCost.Value, 0.5e6), Prices: 0.2e6},
 		},
 	}
 }
@@ -198,8 +198,24 @@ func marramCurves() []study.CurveFit {
 		Curve: "property", Family: market.FamilyWang, Parameter: 0.3812, StandardError: 0.0061, Distortion: market.Wang{Lambda: 0.3812}, Quotes: quotes, Objective: 0.012,
 		InSample: 0.047, LeaveOneOut: math.NaN(), LowestTail: 0.0015, HighestTail: 0.25,
 	}
+	property := study.CurveFit{
+		Curve:  market.Curve{Name: "property", Distortion: free.Distortion, Brokerage: 0.1, MinimumRateOnLine: 0.008, Fit: free},
+		Chosen: free, Candidates: []*market.Fit{wang, free}, Recommended: free, Reason: "it prices quotes that it did not see to 4.1 %, the best family (wang) to 4.7 %",
+		Consistency: &market.Consistency{
+			LeastTotal: []market.Change{{Quote: quotes[1].Quote}, {Quote: quotes[5].Quote, Relative: 0.099, Rate: 0.0166}, {Quote: quotes[6].Quote, Relative: -0.012, Rate: 0.01156}}, Total: 0.111,
+			LeastWorst: []market.Change{{Quote: quotes[5].Quote, Relative: 0.044, Rate: 0.0158}}, Worst: 0.044,
+		},
+		Opened: 0.044,
+	}
+	for i := range 33 {
+		s := 0.0004 * math.Pow(1/0.0004, float64(i)/32)
+		g, wide := free.Distortion.At(s), 0.03+0.25*math.Abs(math.Log10(s)+2)/2
+		property.BandAt = append(property.BandAt, s)
+		property.Resampled = append(property.Resampled, market.Interval{Low: g * (1 - wide/2), High: min(g*(1+wide/2), 1)})
+		property.Band = append(property.Band, market.Interval{Low: g * (1 - wide), High: min(g*(1+wide), 1)})
+	}
 	return []study.CurveFit{
-		{Curve: market.Curve{Name: "property", Distortion: free.Distortion, Brokerage: 0.1, MinimumRateOnLine: 0.008, Fit: free}, Chosen: free, Candidates: []*market.Fit{wang, free}},
+		property,
 		{Curve: market.Curve{Name: "casualty", Distortion: market.Wang{Lambda: 0.2354}, Brokerage: 0.1, MinimumRateOnLine: 0.02}},
 	}
 }

@@ -3,6 +3,7 @@ package report
 import (
 	"bytes"
 	"encoding/json"
+	"fmt"
 	"io"
 	"math"
 	"reflect"
@@ -98,6 +99,54 @@ func TestFieldsKeepTheirOrder(t *testing.T) {
 	if err != nil || !json.Valid(odd) {
 		t.Errorf("%s (%v)", odd, err)
 	}
+}
+
+// TestKeysAreUnique: no object of any document names a key twice.
+func TestKeysAreUnique(t *testing.T) {
+	for name, build := range goldens() {
+		if !strings.HasSuffix(name, ".json") {
+			continue
+		}
+		var b bytes.Buffer
+		if err := build(&b); err != nil {
+			t.Fatal(err)
+		}
+		d := json.NewDecoder(&b)
+		if err := uniqueKeys(d); err != nil {
+			t.Errorf("%s: %v", name, err)
+		}
+	}
+}
+
+// uniqueKeys reads one value and fails on a key that comes twice.
+func uniqueKeys(d *json.Decoder) error {
+	token, err := d.Token()
+	if err != nil {
+		return err
+	}
+	opening, ok := token.(json.Delim)
+	if !ok {
+		return nil
+	}
+	seen := map[string]bool{}
+	for d.More() {
+		if opening == '{' {
+			key, err := d.Token()
+			if err != nil {
+				return err
+			}
+			if name := key.(string); seen[name] {
+				return fmt.Errorf("the key %q comes twice", name)
+			} else {
+				seen[name] = true
+			}
+		}
+		if err := uniqueKeys(d); err != nil {
+			return err
+		}
+	}
+	_, err = d.Token()
+	return err
 }
 
 func TestBound(t *testing.T) {

@@ -131,11 +131,6 @@ func Paper(w io.Writer, s study.Searched, run []Setting) error {
 	return paper.Execute(w, v)
 }
 
-// unbroken keeps a figure, its unit and its error on one line.
-func unbroken(text string) string {
-	return strings.NewReplacer(" ± ", "\u00a0±\u00a0", " %", "\u00a0%").Replace(text)
-}
-
 // tiles picks the four figures on which a decision turns.
 func tiles(s study.Searched) []tile {
 	best, start := s.Result.Best, s.Start

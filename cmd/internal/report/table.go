@@ -190,10 +190,12 @@ func (g *grid) printPart(w io.Writer, s Style, part []int, rooms []columnRoom, t
 	fmt.Fprintln(w)
 }
 
-// wrapped writes text in lines that fit, later lines indented.
+// wrapped writes text in lines that fit, later lines indented. A figure, its unit and its error stay on one line.
 func wrapped(w io.Writer, text, indent string, width int) {
 	length := 0
-	for i, word := range strings.Fields(clean(text)) {
+	text = unbroken(strings.Join(strings.Fields(clean(text)), " "))
+	for i, word := range strings.Split(text, " ") {
+		word = strings.ReplaceAll(word, "\u00a0", " ")
 		n := columns(word)
 		switch {
 		case i == 0:

@@ -79,6 +79,11 @@ func TestWrapped(t *testing.T) {
 	if got, want := b.String(), "one two\n  three\n  four\n"; got != want {
 		t.Errorf("wrapped to %q, want %q", got, want)
 	}
+	b.Reset()
+	wrapped(&b, "about 5.1 % ± 0.4 % or 12 %", "", 12)
+	if got, want := b.String(), "about\n5.1 % ± 0.4 %\nor 12 %\n"; got != want {
+		t.Errorf("wrapped to %q, want %q", got, want)
+	}
 }
 
 func TestExcerpt(t *testing.T) {
