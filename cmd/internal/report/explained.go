@@ -52,7 +52,7 @@ func pricePicture(p optimize.ExplainedPrice, currency string) string {
 	for _, s := range p.Slices {
 		top = max(top, s.Price/(s.To-s.From))
 	}
-	c := newChart(360, 250, usual, moneyAxis(0, p.Slices[len(p.Slices)-1].To, "recovery of a year", currency), axis{low: 0, high: upTo(top), label: "probability, price", format: Percent})
+	c := newChart(480, 260, usual, moneyAxis(0, p.Slices[len(p.Slices)-1].To, "recovery of a year", currency), axis{low: 0, high: upTo(top), label: "probability, price", format: Percent})
 	for _, s := range p.Slices {
 		width := s.To - s.From
 		title := fmt.Sprintf("%s to %s: hit %s, expected %s, asked %s", Money(s.From), Money(s.To), ReturnPeriod(s.Hit), Money(s.Expected), Money(s.Price))
@@ -88,7 +88,7 @@ func pricesJSON(a study.Appraised) []object {
 				{"name", p.Treaty}, {"expected_recovery", number(p.Expected)}, {"asked", number(p.Distorted)}, {"base_premium", number(p.Base)}, {"multiple", number(p.Multiple)},
 				{"rate_on_line", number(p.RateOnLine)}, {"reinstatement_premium", number(p.Reinstatement)}, {"brokerage", number(p.Brokerage)}, {"probability", number(p.MostProbability)},
 			}
-			var slices []object
+			slices := make([]object, 0, len(p.Slices)) // an empty list, not null
 			for _, s := range p.Slices {
 				slices = append(slices, object{{"from", number(s.From)}, {"to", number(s.To)}, {"probability", number(s.Hit)}, {"expected_recovery", number(s.Expected)}, {"asked", number(s.Price)}})
 			}
