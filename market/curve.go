@@ -14,6 +14,7 @@ type Curve struct {
 	Brokerage         float64     // fraction of the premium paid, 0 to below 1; none on reinstatement premiums (common practice, no source)
 	MinimumRateOnLine float64     // least base premium as a fraction of limit, 0 to 1
 	Fit               *Fit        // how the distortion was fitted; nil when it was set by hand
+	Capacity          float64     // yearly probability of a full loss below which nobody writes a layer; 0 = there is no such end
 	Replicates        *Replicates // what other quotes would have given; nil = not drawn
 }
 
@@ -28,6 +29,9 @@ func (c Curve) Validate() error {
 	}
 	if !(c.MinimumRateOnLine >= 0 && c.MinimumRateOnLine <= 1) {
 		faults.Add(fault.Fault{Key: c.Name + ".minimum_rate_on_line", Found: fmt.Sprint(c.MinimumRateOnLine), Allowed: "a fraction from 0 to 1"})
+	}
+	if !(c.Capacity >= 0 && c.Capacity < 1) {
+		faults.Add(fault.Fault{Key: c.Name + ".capacity", Found: fmt.Sprint(c.Capacity), Allowed: "a probability from 0 to below 1"})
 	}
 	if c.Distortion == nil {
 		faults.Add(fault.Fault{Key: c.Name, Found: "no distortion", Allowed: "a family with its parameter, or a fit to quotes"})

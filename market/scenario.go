@@ -16,6 +16,7 @@ type Scenario struct {
 	RateChange        float64  // change of prices as a fraction, above −1: 0.2 hardens by a fifth
 	From, To          float64  // yearly probabilities between which prices change; both 0 = all
 	MinimumRateOnLine float64  // raises the curves' own where it is higher; 0 = leaves them
+	CapacityTo        float64  // return period in years above which there is no capacity: a layer whose top is reached more rarely finds no taker; 0 = leaves it
 }
 
 // Validate reports every fault of the scenario.
@@ -34,6 +35,9 @@ func (s Scenario) Validate(curves []string) error {
 	}
 	if !(s.MinimumRateOnLine >= 0 && s.MinimumRateOnLine <= 1) {
 		faults.Add(fault.Fault{Key: "minimum_rate_on_line", Found: fmt.Sprint(s.MinimumRateOnLine), Allowed: "a fraction from 0 to 1"})
+	}
+	if s.CapacityTo != 0 && !(s.CapacityTo > 1 && !math.IsInf(s.CapacityTo, 0)) {
+		faults.Add(fault.Fault{Key: "capacity_to", Found: fmt.Sprint(s.CapacityTo), Allowed: "a return period of more than 1 year, such as 1 in 250"})
 	}
 	for _, name := range s.Curves {
 		if !slices.Contains(curves, name) {
@@ -56,6 +60,9 @@ func (s Scenario) String() string {
 	if s.MinimumRateOnLine > 0 {
 		parts = append(parts, fmt.Sprintf("minimum rate on line %.4g %%", 100*s.MinimumRateOnLine))
 	}
+	if s.CapacityTo > 0 {
+		parts = append(parts, fmt.Sprintf("no capacity above 1 in %.4g", s.CapacityTo))
+	}
 	if len(s.Curves) > 0 {
 		parts = append(parts, "on "+strings.Join(s.Curves, ", "))
 	}
@@ -70,6 +77,9 @@ func (s Scenario) Turn(c Curve) (Curve, error) {
 		return c, nil
 	}
 	c.MinimumRateOnLine = max(c.MinimumRateOnLine, s.MinimumRateOnLine)
+	if s.CapacityTo > 0 {
+		c.Capacity = max(c.Capacity, 1/s.CapacityTo)
+	}
 	if s.RateChange == 0 {
 		return c, nil
 	}

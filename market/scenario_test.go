@@ -48,7 +48,12 @@ func TestTurn(t *testing.T) {
 	if want := 1.1 * 0.02 / 1.02; err != nil || math.Abs(jump.Distortion.At(1e-9)/want-1) > 1e-3 {
 		t.Errorf("a jump at 0 becomes %v, want %v (%v)", jump.Distortion.At(1e-9), want, err)
 	}
+	scarce, err := Scenario{Name: "scarce", CapacityTo: 250}.Turn(c)
+	if err != nil || scarce.Capacity != 0.004 || scarce.Distortion != c.Distortion {
+		t.Errorf("capacity up to 1 in 250 is %v (%v)", scarce.Capacity, err)
+	}
 	for message, s := range map[string]Scenario{
+		"capacity_to: 1; allowed":                    {Name: "x", CapacityTo: 1},
 		"rate_change: -1; allowed":                   {Name: "x", RateChange: -1},
 		"from 0.2 to 0.1; allowed":                   {Name: "x", From: 0.2, To: 0.1},
 		"minimum_rate_on_line: 2; allowed":           {Name: "x", MinimumRateOnLine: 2},

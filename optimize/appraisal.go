@@ -62,6 +62,7 @@ type Appraisal struct {
 	RentDefined          bool
 	OwnFundsRatio        []Estimate // own funds / net required capital, per standard; empty when own funds are not given
 	NetResult            NetResult
+	NoTaker              []string // treaties for which the market has no capacity; the figures take them as placed all the same
 	Treaties             []TreatyFigure
 	MarginPriceError     float64   // standard error of CededMargin that comes from the quotes, beside that of the simulation; detail only
 	CostPriceError       float64   // the same for TotalCost

@@ -42,6 +42,11 @@ func (a *Appraiser) Appraise(p treaty.Programme, detail bool) (Appraisal, error)
 	result.Commission.Value = totals.commission
 	result.CededMargin.Value = totals.margin()
 	a.measure(&result, totals, w)
+	for _, it := range items {
+		if it.priced.noTaker {
+			result.NoTaker = append(result.NoTaker, it.terms.Name)
+		}
+	}
 	for i, t := range p.Treaties {
 		result.Treaties[i] = TreatyFigure{Terms: t}
 		for _, it := range items {

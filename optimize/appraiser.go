@@ -117,6 +117,7 @@ type priced struct {
 	commission float64 // quota share: fraction of ceded premium
 	attachment float64 // probability per year
 	exhaustion float64
+	noTaker    bool // the market has no capacity for it
 	modelled   bool // base premium or commission follows the curve, so it carries simulation error
 }
 
@@ -330,6 +331,7 @@ func (a *Appraiser) priceExcess(t treaty.Treaty, s *subject, w *workspace) (*pri
 		return nil, fmt.Errorf("price of treaty %q: %w", t.Name, err)
 	}
 	known.base, known.by = premium.Base, premium.Basis
+	known.noTaker = !t.Premium.Given && known.exhaustion < tariff.Curve().Capacity
 	known.modelled = known.modelled && premium.Modelled()
 	return known, nil
 }

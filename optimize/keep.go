@@ -113,9 +113,9 @@ func (s Space) shortfalls(a Appraisal) []Shortfall {
 	return list
 }
 
-// violation adds up how far all constraints are broken; 0 = feasible.
+// violation adds up how far all constraints are broken; 0 = feasible. A treaty without a taker counts as one whole constraint.
 func (s Space) violation(a Appraisal) float64 {
-	sum := 0.0
+	sum := float64(len(a.NoTaker))
 	for _, k := range s.Keep {
 		sum += k.violation(a)
 	}

@@ -349,6 +349,9 @@ func (s Scenario) Turn() market.Scenario {
 	if s.From != nil && s.To == nil {
 		turn.To = 1
 	}
+	if s.CapacityTo != nil {
+		turn.CapacityTo = s.CapacityTo.ReturnPeriod()
+	}
 	return turn
 }
 

@@ -164,6 +164,7 @@ type Scenario struct {
 	From              *Fraction `key:"from"`
 	To                *Fraction `key:"to"`
 	MinimumRateOnLine *Fraction `key:"minimum_rate_on_line"`
+	CapacityTo        *Level    `key:"capacity_to"`
 }
 
 // Programme is a list of treaties.

@@ -7,6 +7,7 @@ import (
 	"os"
 	"path/filepath"
 	"reflect"
+	"slices"
 	"strings"
 	"testing"
 
@@ -161,6 +162,18 @@ func TestScenario(t *testing.T) {
 	}
 	if a.Programmes[1].CostPriceError <= 0 || b.Programmes[1].CostPriceError != 0 {
 		t.Errorf("errors from quotes: %v, under a scenario %v", a.Programmes[1].CostPriceError, b.Programmes[1].CostPriceError)
+	}
+	scarce, err := open(t, wind+"  scenarios:\n    - {name: scarce, capacity_to: 1 in 20}\n", Options{Scenario: "scarce"})
+	if err != nil {
+		t.Fatal(err)
+	}
+	c, err := scarce.Appraise(context.Background())
+	if err != nil || !slices.Equal(c.Programmes[1].NoTaker, []string{"layer"}) || !slices.ContainsFunc(c.Warnings, func(w string) bool { return strings.Contains(w, "no capacity for layer") }) {
+		t.Errorf("a layer that is exhausted once in 31 years finds a taker up to 1 in 20: %v, %q (%v)", c.Programmes[1].NoTaker, c.Warnings, err)
+	}
+	found, err := scarce.Search(context.Background(), SearchOptions{})
+	if err != nil || len(found.Result.Best.NoTaker) > 0 || !found.Result.Feasible {
+		t.Errorf("the search buys what has no taker: %+v (%v)", found.Result.Best.NoTaker, err)
 	}
 	if _, err := open(t, section, Options{Scenario: "hrad"}); err == nil || !strings.Contains(err.Error(), `no scenario is named "hrad"; allowed: ["hard"]; did you mean "hard"?`) {
 		t.Errorf("%v", err)

@@ -142,7 +142,11 @@ func (s *Study) appraised(all []optimize.Appraisal) (Appraised, error) {
 			a.Differences = append(a.Differences, Difference{p.Programme.Name, against.Programme.Name, optimize.CompareCost(p, against), optimize.ComparePrices(p, against)})
 		}
 	}
+	a.Warnings = slices.Clone(a.Warnings)
 	for _, p := range all {
+		if len(p.NoTaker) > 0 {
+			a.Warnings = append(a.Warnings, fmt.Sprintf("Programme %s: the market has no capacity for %s; its figures take it as placed all the same.", p.Programme.Name, strings.Join(p.NoTaker, ", ")))
+		}
 		prices, err := s.appraiser.Explain(p.Programme)
 		if err != nil {
 			return Appraised{}, err
