@@ -28,7 +28,7 @@ func ours(name string) bool {
 	if name == marker || name == "frontier.csv" || name == "report.html" {
 		return true
 	}
-	return strings.HasPrefix(name, "curve-") && strings.HasSuffix(name, ".svg")
+	return strings.HasPrefix(name, "curve-") && (strings.HasSuffix(name, ".svg") || strings.HasSuffix(name, ".png"))
 }
 
 // CheckFolder tells, before a long run, whether WriteFolder would refuse the folder: it takes a new one, an empty one, or with replace one

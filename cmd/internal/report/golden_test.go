@@ -40,7 +40,9 @@ func goldens() map[string]func(io.Writer) error {
 		"frontier.csv":        func(w io.Writer) error { return FrontierCSV(w, s) },
 	}
 	for _, picture := range CurvePictures(s.Curves) {
-		files[picture.Name] = picture.Write
+		if strings.HasSuffix(picture.Name, ".svg") { // a PNG has no lines to compare; see TestCurvePNG
+			files[picture.Name] = picture.Write
+		}
 	}
 	return files
 }

@@ -166,7 +166,7 @@ func CurvePictures(curves []study.CurveFit) []File {
 		files = append(files, File{Name: fmt.Sprintf("curve-%d-%s.svg", i+1, fileName(f.Curve.Name)), Write: func(w io.Writer) error {
 			_, err := io.WriteString(w, picture)
 			return err
-		}})
+		}}, File{Name: fmt.Sprintf("curve-%d-%s.png", i+1, fileName(f.Curve.Name)), Write: func(w io.Writer) error { return CurvePNG(w, f) }})
 	}
 	return files
 }

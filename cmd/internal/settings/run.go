@@ -71,7 +71,7 @@ func AddFlags(flags *pflag.FlagSet) { addFlags(flags, false) }
 func AddSearchFlags(flags *pflag.FlagSet) { addFlags(flags, true) }
 
 func addFlags(flags *pflag.FlagSet, search bool) {
-	what := map[string]string{"count": "count", "seed": "seed", "text": "folder"}
+	what := map[string]string{"count": "count", "seed": "seed", "text": "name"}
 	for _, s := range runSettings() {
 		switch {
 		case s.search != search:
