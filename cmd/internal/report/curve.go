@@ -49,6 +49,7 @@ func curvePicture(f study.CurveFit) string {
 	for _, q := range quoted {
 		c.quote(q, f.Curve.Brokerage, low)
 	}
+	c.reconciled(f, low)
 	labels := []label{{x: c.x.at(0.03), y: c.y.at(0.03), text: "expected loss", class: "quiet-text"}}
 	if at := 0.3; to >= at || f.Chosen == nil {
 		labels = append(labels, label{x: c.x.at(at), y: c.y.at(f.Curve.Distortion.At(at)), text: f.Curve.Distortion.String(), class: "main-text"})
@@ -114,6 +115,21 @@ func (c *chart) quote(q market.FittedQuote, brokerage, low float64) {
 	c.line("span", from, at, to, at)
 	c.avoidLine(from, at, to, at)
 	c.mark(class, "dot", middle(q, low), price, fmt.Sprintf("%s: quoted %s, fitted %s, multiple %s", q.Name, Percent(q.RateOnLine), Percent(q.Fitted), fixed(q.Multiple, 2)))
+}
+
+// reconciled marks, with a cross, the price at which each quote at fault would have to stand for one curve to price all of them.
+func (c *chart) reconciled(f study.CurveFit, low float64) {
+	if f.Consistency == nil {
+		return
+	}
+	for _, change := range f.Consistency.LeastTotal {
+		if change.Relative == 0 {
+			continue
+		}
+		x, y := c.x.at(middle(market.FittedQuote{Quote: change.Quote}, low)), c.y.at(change.Rate*(1-f.Curve.Brokerage))
+		fmt.Fprintf(&c.body, `<g class="fault"><title>%s</title><path d="M%s %sl7 7m0-7l-7 7"/></g>`,
+			escape(fmt.Sprintf("%s: %s would make the quotes consistent", change.Quote.Name, percentTo(change.Relative, 1, true))), place(x-3.5), place(y-3.5))
+	}
 }
 
 // residuals draws, on the same probabilities, by how much the curve asks more than each quote.

@@ -3,8 +3,10 @@ package report
 import (
 	"fmt"
 	"html/template"
+	"strings"
 
 	"cedewright/cmd/internal/study"
+	"cedewright/market"
 	"cedewright/optimize"
 )
 
@@ -20,7 +22,7 @@ func pricesOf(a study.Appraised, name string) []optimize.ExplainedPrice {
 
 // priceTable shows how the prices of a programme's excess treaties come about, for 100 % of each.
 func priceTable(prices []optimize.ExplainedPrice) textTable {
-	t := textTable{Title: "How the prices come about, a year for 100 % of each treaty", Head: []string{"treaty", "recovery", "asked by the curve", "premium", "multiple", "rate on line", "reinstatement", "brokerage"}}
+	t := textTable{Title: "How the prices come about, a year for 100 % of each treaty", Head: []string{"treaty", "recovery", "asked by the curve", "premium", "multiple", "rate on line", "quotes allow", "reinstatement", "brokerage"}}
 	var amounts []float64
 	for _, p := range prices {
 		amounts = append(amounts, p.Base, p.Expected)
@@ -37,9 +39,17 @@ func priceTable(prices []optimize.ExplainedPrice) textTable {
 		if finite(p.Multiple) {
 			multiple = fixed(p.Multiple, 2)
 		}
-		t.Rows = append(t.Rows, []string{clean(p.Treaty), money(p.Expected), money(p.Distorted), money(p.Base), multiple, Percent(p.RateOnLine), money(p.Reinstatement), money(p.Brokerage)})
+		t.Rows = append(t.Rows, []string{clean(p.Treaty), money(p.Expected), money(p.Distorted), money(p.Base), multiple, Percent(p.RateOnLine), allowedRates(p.Allowed), money(p.Reinstatement), money(p.Brokerage)})
 	}
 	return t
+}
+
+// allowedRates writes an interval of rates on line.
+func allowedRates(i *market.Interval) string {
+	if i == nil || !finite(i.Low) || !finite(i.High) {
+		return "–"
+	}
+	return strings.TrimSuffix(percentTo(i.Low, 2, false), " %") + "–" + percentTo(i.High, 2, false)
 }
 
 // pricePicture draws a price by thin layers: along the year's recovery, how likely each part is paid, and above it what the curve adds. Areas are money:
@@ -87,6 +97,9 @@ func pricesJSON(a study.Appraised) []object {
 			o := object{
 				{"name", p.Treaty}, {"expected_recovery", number(p.Expected)}, {"asked", number(p.Distorted)}, {"base_premium", number(p.Base)}, {"multiple", number(p.Multiple)},
 				{"rate_on_line", number(p.RateOnLine)}, {"reinstatement_premium", number(p.Reinstatement)}, {"brokerage", number(p.Brokerage)}, {"probability", number(p.MostProbability)},
+			}
+			if p.Allowed != nil {
+				o = append(o, field{"allowed_by_quotes", object{{"low", number(p.Allowed.Low)}, {"high", number(p.Allowed.High)}}})
 			}
 			slices := make([]object, 0, len(p.Slices)) // an empty list, not null
 			for _, s := range p.Slices {

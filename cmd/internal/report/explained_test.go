@@ -17,7 +17,7 @@ import (
 
 func explainedPrices(name string) []optimize.ExplainedPrice {
 	return []optimize.ExplainedPrice{
-		{Treaty: name, Explanation: market.Explanation{Expected: 2e6, Distorted: 5e6, Base: 5.2e6, Reinstatement: 0.2e6, Brokerage: 0.5e6, Multiple: 2.6, RateOnLine: 0.1,
+		{Treaty: name, Allowed: &market.Interval{Low: 0.091, High: 0.12}, Explanation: market.Explanation{Expected: 2e6, Distorted: 5e6, Base: 5.2e6, Reinstatement: 0.2e6, Brokerage: 0.5e6, Multiple: 2.6, RateOnLine: 0.1,
 			Slices: []market.Slice{{From: 0, To: 20e6, Hit: 0.05, Expected: 0.9e6, Price: 2e6}, {From: 20e6, To: 35e6, Hit: 0.03, Expected: 1.1e6, Price: 3e6}}}},
 		{Treaty: "quoted", Explanation: market.Explanation{Expected: 1e6, Distorted: math.NaN(), Base: 2e6, Multiple: 2, RateOnLine: math.NaN(),
 			Slices: []market.Slice{{From: 0, To: 1e6, Hit: 0.01, Expected: 1e6, Price: math.NaN()}}}},
@@ -28,7 +28,7 @@ func explainedPrices(name string) []optimize.ExplainedPrice {
 func TestExplainedPrices(t *testing.T) {
 	prices := explainedPrices(`<wind> & "fire"`)
 	table := priceTable(prices)
-	if len(table.Rows) != 3 || table.Rows[0][4] != "2.60" || table.Rows[1][2] != "–" || table.Rows[1][5] != "–" || table.Rows[2][4] != "–" {
+	if len(table.Rows) != 3 || table.Rows[0][4] != "2.60" || table.Rows[1][2] != "–" || table.Rows[1][5] != "–" || table.Rows[0][6] != "9.10–12.00 %" || table.Rows[1][6] != "–" || table.Rows[2][4] != "–" {
 		t.Errorf("table %q", table.Rows)
 	}
 	panels := string(pricePanels(prices, "EUR"))

@@ -61,14 +61,14 @@ func printTable(w io.Writer, s Style, t textTable) {
 
 // quoteTable shows a fit quote by quote.
 func quoteTable(f *market.Fit) textTable {
-	t := textTable{Head: []string{"quote", "attaches", "exhausts", "expected loss", "quoted", "fitted", "residual", "left out", "multiple", ""}, Remark: true}
+	t := textTable{Head: []string{"quote", "attaches", "exhausts", "expected loss", "quoted", "fitted", "residual", "left out", "pull", "multiple", ""}, Remark: true}
 	for _, q := range f.Quotes {
 		expected, multiple := "–", "–"
 		if q.Multiple > 0 {
 			expected, multiple = percentTo(q.RateOnLine/q.Multiple, 2, false), fixed(q.Multiple, 2)
 		}
 		t.Rows = append(t.Rows, []string{q.Name, Percent(q.Attachment), Percent(q.Exhaustion), expected, percentTo(q.RateOnLine, 2, false), percentTo(q.Fitted, 2, false),
-			percentTo(q.Residual, 1, true), percentTo(q.LeftOut/q.RateOnLine-1, 1, true), multiple, quoteMark(f, q)})
+			percentTo(q.Residual, 1, true), percentTo(q.LeftOut/q.RateOnLine-1, 1, true), percentTo(q.Fitted/q.LeftOut-1, 1, true), multiple, quoteMark(f, q)})
 	}
 	return t
 }
@@ -92,7 +92,7 @@ func quoteMark(f *market.Fit, q market.FittedQuote) string {
 }
 
 func quoteWords(f *market.Fit) string {
-	text := "Rates on line include brokerage. Residual: fitted over quoted, less 1; left out: the same when the curve is fitted to the other quotes. " +
+	text := "Rates on line include brokerage. Residual: fitted over quoted, less 1; left out: the same when the curve is fitted to the other quotes; pull: by how much the quote moves its own price. " +
 		fmt.Sprintf("Multiple: quoted rate over expected loss. The quotes speak for probabilities from %s to %s; prices beyond are extrapolated.", Percent(f.LowestTail), Percent(f.HighestTail))
 	if f.Family == market.FamilyFree && f.Pull > 0 {
 		text += fmt.Sprintf(" Where no quote speaks, the curve is pulled towards the family %s with the weight of %s.", f.Toward, quotesWorth(f.Pull))

@@ -234,7 +234,7 @@ func fitJSON(f *market.Fit) object {
 		{"quotes", objects(f.Quotes, func(q market.FittedQuote) object {
 			return object{
 				{"name", q.Name}, {"attachment_probability", number(q.Attachment)}, {"exhaustion_probability", number(q.Exhaustion)}, {"weight", number(q.Weight)},
-				{"rate_on_line", number(q.RateOnLine)}, {"fitted", number(q.Fitted)}, {"residual", number(q.Residual)}, {"left_out", number(q.LeftOut)},
+				{"rate_on_line", number(q.RateOnLine)}, {"fitted", number(q.Fitted)}, {"residual", number(q.Residual)}, {"left_out", number(q.LeftOut)}, {"pull", number(q.Fitted/q.LeftOut - 1)},
 				{"multiple", number(q.Multiple)}, {"mark", quoteMark(f, q)},
 			}
 		})},

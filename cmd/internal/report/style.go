@@ -20,7 +20,7 @@ polyline{fill:none;stroke-width:2.2;stroke-linejoin:round}.front,.best-line{stro
 .front-point,.best{fill:var(--main)}.none{fill:var(--page);stroke:var(--ink);stroke-width:2}.start{fill:var(--warm)}.other{fill:var(--quiet)}
 .quote{fill:var(--warm)}.unused{fill:var(--quiet-pale);stroke:var(--quiet)}.span{stroke:var(--warm);stroke-width:1.4;opacity:.5}.stem{stroke:var(--warm);stroke-width:2;opacity:.6}
 .block-best{fill:var(--main-pale);stroke:var(--main);stroke-width:1.4}.block-start{fill:var(--warm-pale);stroke:var(--warm);stroke-width:1.4}.block-other{fill:var(--quiet-pale);stroke:var(--quiet);stroke-width:1.4}
-.allowed{fill:var(--quiet-pale);opacity:.6}.resampled{fill:var(--main-pale);opacity:.7}.unplaced{fill:none;stroke:var(--quiet);stroke-dasharray:3 3}
+.fault{fill:none;stroke:var(--ink);stroke-width:1.4}.allowed{fill:var(--quiet-pale);opacity:.6}.resampled{fill:var(--main-pale);opacity:.7}.unplaced{fill:none;stroke:var(--quiet);stroke-dasharray:3 3}
 .bar-best{fill:var(--main)}.bar-start{fill:var(--warm)}.bar-other{fill:var(--quiet)}.bar-none{fill:var(--quiet-pale);stroke:var(--ink);stroke-width:1}`
 
 // colours sets the colours of a place for light, dark and print.
