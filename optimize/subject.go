@@ -68,23 +68,9 @@ func (s selection) overlaps(o selection) bool {
 	return anyBoth(s.class, o.class) && anyBoth(s.peril, o.peril)
 }
 
-// within tells whether every row covered by s is covered by o.
-func (s selection) within(o selection) bool {
-	return !anyOnly(s.class, o.class) && !anyOnly(s.peril, o.peril)
-}
-
 func anyBoth(a, b []bool) bool {
 	for i := range a {
 		if a[i] && b[i] {
-			return true
-		}
-	}
-	return false
-}
-
-func anyOnly(a, b []bool) bool {
-	for i := range a {
-		if a[i] && !b[i] {
 			return true
 		}
 	}

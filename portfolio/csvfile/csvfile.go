@@ -118,9 +118,6 @@ func (t *Table) Next() bool {
 // Line gives the line of the current record.
 func (t *Table) Line() int { return t.line }
 
-// Has tells whether the file has the column.
-func (t *Table) Has(column string) bool { _, ok := t.place[column]; return ok }
-
 // Text gives the field of a column of the current record, blanks around it cut off; "" when the file lacks the column.
 func (t *Table) Text(column string) string {
 	i, ok := t.place[column]
