@@ -72,6 +72,7 @@ func appraised(a study.Appraised) object {
 		}},
 		{"programmes", objects(a.Programmes, programme)},
 		{"prices", pricesJSON(a)},
+		{"allocations", allocationsJSON(a)},
 		{"differences", objects(a.Differences, func(d study.Difference) object {
 			return object{{"programme", d.Programme}, {"against", d.Against}, {"total_cost", number(d.TotalCost.Value)}, {"standard_error", number(d.TotalCost.StandardError)}, {"error_from_quotes", number(d.Prices)}}
 		})},

@@ -71,6 +71,8 @@ type paperView struct {
 	FrontierCount                                string
 	Prices                                       textTable
 	PricePictures                                template.HTML
+	Allocation                                   []textTable
+	AllocationWords                              string
 	Curves                                       []curveSection
 	Keep, Warnings, Notes, LeftOut               []string
 	Caution                                      string
@@ -116,6 +118,9 @@ func Paper(w io.Writer, s study.Searched, run []Setting) error {
 	}
 	prices := pricesOf(s.Appraised, s.Result.Best.Programme.Name)
 	v.Prices, v.PricePictures = priceTable(prices), pricePanels(prices, s.Currency)
+	if k, ok := allocationOf(s.Appraised, s.Result.Best.Programme.Name); ok {
+		v.Allocation, v.AllocationWords = allocationTables(k), allocationWords
+	}
 	for _, c := range s.Curves {
 		v.Curves = append(v.Curves, curveOf(c))
 	}

@@ -35,6 +35,9 @@ func PrintAppraised(w io.Writer, a study.Appraised, s Style) {
 		if i < len(a.Prices) && len(a.Prices[i]) > 0 {
 			printTable(w, s, priceTable(a.Prices[i]))
 		}
+		if k, ok := allocationOf(a, p.Programme.Name); ok && len(k.Treaties) > 0 {
+			printAllocation(w, s, k)
+		}
 	}
 	printFoot(w, s, a.Head)
 }
@@ -72,6 +75,14 @@ func printTreaties(w io.Writer, s Style, p optimize.Appraisal) {
 		bullet(w, s, f.Terms.Name+": "+termsOf(f))
 	}
 	wrapped(w, "Rates are for 100 % of a treaty. Relief is last in: required capital without the treaty less with it, first standard.", "", s.width())
+	fmt.Fprintln(w)
+}
+
+func printAllocation(w io.Writer, s Style, a optimize.Allocation) {
+	for _, t := range allocationTables(a) {
+		printTable(w, s, t)
+	}
+	wrapped(w, allocationWords, "", s.width())
 	fmt.Fprintln(w)
 }
 

@@ -105,6 +105,7 @@ type Appraised struct {
 	Gross         GrossFigures
 	Programmes    []optimize.Appraisal        // first is "no cover"
 	Prices        [][]optimize.ExplainedPrice // of each programme, in the same order
+	Allocations   []optimize.Allocation       // likewise
 	Differences   []Difference                // of every later programme to the first named "expiring" or, without one, to no cover
 }
 

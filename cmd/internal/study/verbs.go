@@ -152,6 +152,11 @@ func (s *Study) appraised(all []optimize.Appraisal) (Appraised, error) {
 			return Appraised{}, err
 		}
 		a.Prices = append(a.Prices, prices)
+		allocation, err := s.appraiser.Allocate(p.Programme)
+		if err != nil {
+			return Appraised{}, err
+		}
+		a.Allocations = append(a.Allocations, allocation)
 	}
 	return a, nil
 }
