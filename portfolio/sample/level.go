@@ -2,7 +2,6 @@ package sample
 
 import (
 	"fmt"
-	"math"
 	"math/big"
 	"math/bits"
 	"strconv"
@@ -37,12 +36,15 @@ func ParseLevel(text string) (Level, error) {
 	return levelOf(p, text)
 }
 
-// LevelOf gives the level whose shortest decimal prints as p: LevelOf(0.995) is exactly 199/200.
+// LevelOf gives the level whose shortest decimal prints as p: LevelOf(0.995) is exactly 199/200. It accepts 0 ≤ p < 1, and refuses a p so
+// small or so finely written that its decimal does not fit: one of up to 19 decimals always fits.
 func LevelOf(p float64) (Level, error) {
-	if math.IsNaN(p) || math.IsInf(p, 0) {
+	text := strconv.FormatFloat(p, 'g', -1, 64)
+	exact, ok := new(big.Rat).SetString(text)
+	if !ok { // NaN and infinities
 		return Level{}, fmt.Errorf("sample: level %v must be at least 0 and below 1", p)
 	}
-	return ParseLevel(strconv.FormatFloat(p, 'f', -1, 64))
+	return levelOf(exact, text)
 }
 
 // parseDecimal reads a plain decimal number exactly. Fractions, hexadecimal and huge exponents are refused.
@@ -62,9 +64,16 @@ func levelOf(p *big.Rat, text string) (Level, error) {
 		return Level{}, fmt.Errorf("sample: level %q must be at least 0 and below 1", text)
 	}
 	if !p.Num().IsUint64() || !p.Denom().IsUint64() {
-		return Level{}, fmt.Errorf("sample: level %q has too many digits", text)
+		return Level{}, fmt.Errorf("sample: level %q has too many digits: at most 19 decimals are kept exactly", text)
 	}
-	return Level{p.Num().Uint64(), p.Denom().Uint64()}, nil
+	if p.Sign() == 0 {
+		return Level{}, nil // so that == holds with the zero value
+	}
+	l := Level{p.Num().Uint64(), p.Denom().Uint64()}
+	if l.Float() == 1 {
+		return Level{}, fmt.Errorf("sample: level %q is too close to 1 to be told from it", text)
+	}
+	return l, nil
 }
 
 func (l Level) fraction() (numerator, denominator uint64) {
@@ -74,29 +83,44 @@ func (l Level) fraction() (numerator, denominator uint64) {
 	return l.numerator, l.denominator
 }
 
-// Float gives p.
+// Float gives p, rounded once; it is below 1.
 func (l Level) Float() float64 {
 	n, d := l.fraction()
-	return float64(n) / float64(d)
+	return quotient(n, d)
 }
 
-// Tail gives 1 − p, rounded once.
+// Tail gives 1 − p, rounded once; it is above 0.
 func (l Level) Tail() float64 {
 	n, d := l.fraction()
-	return float64(d-n) / float64(d)
+	return quotient(d-n, d)
 }
 
 // ReturnPeriod gives 1/(1 − p) in years, rounded once.
 func (l Level) ReturnPeriod() float64 {
 	n, d := l.fraction()
-	return float64(d) / float64(d-n)
+	return quotient(d, d-n)
 }
 
-// String gives the level in per cent, as short as it is exact to twelve digits: "99.5%".
+// quotient gives a/b rounded once, also where a or b does not fit the 53 bits of a float64.
+func quotient(a, b uint64) float64 {
+	if a|b < 1<<53 {
+		return float64(a) / float64(b)
+	}
+	q, _ := new(big.Rat).SetFrac(new(big.Int).SetUint64(a), new(big.Int).SetUint64(b)).Float64()
+	return q
+}
+
+// String gives the level in per cent, "99.5%": to twelve digits, or to more where twelve would show a level of 100 %. ParseLevel reads it
+// back, to the same level if its decimals end within those digits.
 func (l Level) String() string {
 	n, d := l.fraction()
-	percent, _ := new(big.Rat).SetFrac(new(big.Int).SetUint64(n), new(big.Int).SetUint64(d)).Float64()
-	return strconv.FormatFloat(100*percent, 'g', 12, 64) + "%"
+	exact := new(big.Rat).SetFrac(new(big.Int).SetUint64(n), new(big.Int).SetUint64(d))
+	percent, _ := exact.Mul(exact, big.NewRat(100, 1)).Float64()
+	text := strconv.FormatFloat(percent, 'g', 12, 64)
+	if text == "100" || strings.Contains(text, "e") {
+		text = strconv.FormatFloat(percent, 'f', -1, 64)
+	}
+	return text + "%"
 }
 
 // Rank gives the rank, from 1 (smallest) to n, of the order statistic that is the quantile at this level of a sample of n equally
@@ -119,7 +143,7 @@ func (l Level) Excess(n int) float64 {
 	k, remainder := bits.Div64(high, low, denominator)
 	switch {
 	case remainder > 0:
-		return float64(denominator-remainder) / float64(denominator)
+		return quotient(denominator-remainder, denominator)
 	case k == 0:
 		return 1
 	default:
