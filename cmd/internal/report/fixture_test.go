@@ -155,6 +155,7 @@ func marramSearched() study.Searched {
 	s.Programmes = append(s.Programmes, best)
 	s.Differences = append(s.Differences, study.Difference{Programme: "best found", Against: "expiring", TotalCost: est(best.TotalCost.Value-expiring.TotalCost.Value, 0.3e6)})
 	s.Result = optimize.Result{Best: best, Feasible: true, Evaluations: 12951, Generations: 136, Seed: 1, Status: optimize.Settled, Polished: true, SpaceSize: 6.9e16}
+	s.Bound = optimize.Bound{TotalCost: 21.4e6, Certified: true, Reason: "no contract priced at the curves or above can come"}
 	for i := range 14 {
 		scale := 0.3 + 0.07*float64(i)
 		p := sketch{name: "frontier", net: est(grossOneYear-96e6*math.Sqrt(scale), 7e6), tail: est(grossTail-120e6*scale, 9e6), oneIn10: -5e6, sd: 80e6, treaties: []optimize.TreatyFigure{

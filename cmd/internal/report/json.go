@@ -33,11 +33,16 @@ func SearchedJSON(w io.Writer, s study.Searched, run []Setting) error {
 }
 
 // bound says below which total cost no programme of the space lies, when that is known.
+// bound gives the total cost that nothing can come below: that of the best when every programme was appraised, else that of thin layers if certified.
 func bound(s study.Searched) object {
 	if s.Result.Status == optimize.Proven && s.Result.Feasible {
-		return object{{"total_cost", number(s.Result.Best.TotalCost.Value)}, {"reason", s.Result.Status.String()}}
+		return object{{"total_cost", number(s.Result.Best.TotalCost.Value)}, {"certified", true}, {"reason", s.Result.Status.String()}}
 	}
-	return object{{"total_cost", none}, {"reason", "not known: the space was searched, not exhausted"}}
+	least := none
+	if s.Bound.Certified {
+		least = number(s.Bound.TotalCost)
+	}
+	return object{{"total_cost", least}, {"certified", s.Bound.Certified}, {"reason", s.Bound.Reason}}
 }
 
 func keepJSON(k optimize.Keep) object {

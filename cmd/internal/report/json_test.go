@@ -151,8 +151,13 @@ func uniqueKeys(d *json.Decoder) error {
 
 func TestBound(t *testing.T) {
 	s := marramSearched()
-	if b := bound(s); !math.IsNaN(float64(b[0].value.(number))) {
-		t.Errorf("a bound without proof: %v", b)
+	s.Bound = optimize.Bound{TotalCost: 12, Reason: "a reason"}
+	if b := bound(s); !math.IsNaN(float64(b[0].value.(number))) || b[1].value.(bool) || b[2].value.(string) != "a reason" {
+		t.Errorf("a bound that is not certified: %v", b)
+	}
+	s.Bound.Certified = true
+	if b := bound(s); float64(b[0].value.(number)) != 12 || !b[1].value.(bool) {
+		t.Errorf("a certified bound: %v", b)
 	}
 	s.Result.Status = optimize.Proven
 	if b := bound(s); float64(b[0].value.(number)) != s.Result.Best.TotalCost.Value {

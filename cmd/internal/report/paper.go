@@ -128,7 +128,7 @@ func Paper(w io.Writer, s study.Searched, run []Setting) error {
 		v.Treaties = append(v.Treaties, treatiesOf(towers[k]))
 	}
 	v.Run = [][2]string{
-		{"Search", strings.TrimPrefix(searchWords(s), "Searched: ")},
+		{"Search", strings.TrimPrefix(searchWords(s), "Searched: ") + " " + boundWords(s)},
 		{"Seeds", fmt.Sprintf("book %d, search %d", s.Head.Seed, s.Result.Seed)},
 		{"Cost of capital", fmt.Sprintf("%s a year on required capital under “%s”, which drives the search", Percent(s.CostOfCapital), clean(s.NoCover.Capital[0].Standard))},
 		{"Program", Version()},

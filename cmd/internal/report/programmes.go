@@ -96,6 +96,9 @@ func PrintSearched(w io.Writer, found study.Searched, s Style) {
 	printTreaties(w, s, found.Result.Best)
 	printFrontier(w, s, found)
 	wrapped(w, searchWords(found), "", s.width())
+	if text := boundWords(found); text != "" {
+		wrapped(w, text, "", s.width())
+	}
 	for _, k := range keepWords(found.Keep) {
 		wrapped(w, "Kept: "+k+".", "", s.width())
 	}

@@ -116,6 +116,18 @@ func searchWords(s study.Searched) string {
 	return text + "."
 }
 
+// boundWords says how far from the best conceivable the best found can be, on the years it was chosen on.
+func boundWords(s study.Searched) string {
+	if s.Result.Status == optimize.Proven || !s.Result.Feasible {
+		return ""
+	}
+	if !s.Bound.Certified {
+		return "How far from the best possible it can be is not known: " + clean(s.Bound.Reason) + "."
+	}
+	return fmt.Sprintf("On the years it was chosen on, the best found costs %s more than %s, below which %s.",
+		Money(s.Result.Best.TotalCost.Value-s.Bound.TotalCost), Money(s.Bound.TotalCost), clean(s.Bound.Reason))
+}
+
 func shortfalls(s study.Searched) string {
 	var parts []string
 	for _, f := range s.Result.Shortfalls {

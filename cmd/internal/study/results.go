@@ -130,6 +130,7 @@ type Difference struct {
 type Searched struct {
 	Appraised // no cover, the start programme, the study's other programmes, and last the best found, named "best found"
 	Result    optimize.Result
+	Bound     optimize.Bound // no total cost can come below it, on the loaded years
 	Start     optimize.Appraisal
 	NoCover   optimize.Appraisal
 	Curves    []CurveFit

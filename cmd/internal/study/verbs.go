@@ -213,6 +213,7 @@ func (s *Study) Search(ctx context.Context, o SearchOptions) (Searched, error) {
 	found := Searched{Appraised: figures, Result: result, NoCover: all[0], Curves: s.curves}
 	found.Start = s.reference(all)
 	found.Notes = append(found.Notes, result.Notes...)
+	found.Bound = s.appraiser.ThinLayerBound(space)
 	found.Keep = space.Keep
 	found.Space = describeSpace(space, result.SpaceSize)
 	for _, p := range []optimize.Appraisal{found.Start, found.Result.Best} {
