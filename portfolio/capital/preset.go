@@ -5,6 +5,11 @@ import "cedewright/portfolio/sample"
 // Presets lists the standards that a study can name, each with its legal source and how that was known. A preset gives the measure of
 // one year's result; what else a regime asks for (other risks, formulas, transitional rules) it does not know. Law changes: the
 // responsible actuary checks the text in force.
+//
+// All count from the result of the year. The requirement is a worst change of own funds over the year, for value at risk (basic own funds)
+// as for expected shortfall (risk-bearing capital), and the margin expected in the year's premiums is part of that change: a treaty that
+// gives margin away makes the worst change worse by as much, which the deviation from the mean would hide. Regimes, or supervisors, that
+// do not let expected profit count are met by basis deviation, set in the study beside the preset. (Common practice, no source.)
 func Presets() []Standard {
 	return []Standard{
 		{

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"math/rand/v2"
+	"slices"
 	"strings"
 	"testing"
 
@@ -126,12 +127,32 @@ func TestStandardByProperty(t *testing.T) {
 		if err != nil {
 			t.Fatal(err)
 		}
+		s, err := sample.New(losses)
+		if err != nil {
+			t.Fatal(err)
+		}
+		backwards := append([]float64(nil), losses...)
+		slices.Reverse(backwards)
 		mean := func(x []float64) float64 { return sample.Sum(x) / float64(len(x)) }
 		amount := func(s Standard, x []float64) float64 {
 			return s.Amount(append([]float64(nil), x...), mean(x))
 		}
 		for _, m := range []Measure{ValueAtRisk, TailValueAtRisk} {
 			deviation, result := Standard{Measure: m, Basis: Deviation, Level: l}, Standard{Measure: m, Basis: Result, Level: l}
+			plain := s.VaR(l)
+			if m == TailValueAtRisk {
+				plain = s.TVaR(l)
+			}
+			// 1e-9: sums of 50 numbers below 150, in different orders.
+			if got := amount(result, losses); math.Abs(got-max(plain, 0)) > 1e-9 || math.Abs(got-amount(result, backwards)) > 1e-9 {
+				t.Fatalf("%v is %v, and %v with the years reversed; the sample says %v", m, got, amount(result, backwards), plain)
+			}
+			if got := amount(deviation, losses); math.Abs(got-plain+s.Mean()) > 1e-9 {
+				t.Fatalf("deviation of %v is %v, want %v", m, got, plain-s.Mean())
+			}
+			if m == TailValueAtRisk && amount(deviation, losses) < -1e-9 {
+				t.Fatalf("a tail mean below the mean: %v", amount(deviation, losses))
+			}
 			moved, doubled, worse := make([]float64, len(losses)), make([]float64, len(losses)), make([]float64, len(losses))
 			for i, x := range losses {
 				moved[i], doubled[i], worse[i] = x+20, 2*x, x+float64(i%3)
@@ -147,6 +168,82 @@ func TestStandardByProperty(t *testing.T) {
 			}
 		}
 	})
+}
+
+// TestInfluenceIsADerivative: one more year like year i, given to many copies of the years, moves required capital by its influence.
+func TestInfluenceIsADerivative(t *testing.T) {
+	const n, copies = 50, 200
+	r := rand.New(rand.NewPCG(6, 6))
+	losses := make([]float64, 0, n)
+	for range n {
+		losses = append(losses, math.Round(100*r.ExpFloat64())-60)
+	}
+	repeated := slices.Repeat(losses, copies)
+	before := slices.Clone(repeated)
+	for _, basis := range []Basis{Result, Deviation} {
+		s := Standard{Measure: TailValueAtRisk, Level: level("93%"), Basis: basis}
+		amount := func(x []float64) float64 { return s.Amount(slices.Clone(x), sample.Sum(x)/float64(len(x))) }
+		influence := s.Influence(repeated, make([]float64, n*copies))
+		if got := sample.Sum(influence) / n / copies; math.Abs(got) > 1e-9 { // rounding of 10,000 terms
+			t.Errorf("%v: mean influence %v", basis, got)
+		}
+		for i, x := range losses {
+			moved := (amount(append(slices.Clone(repeated), x)) - amount(repeated)) * (n*copies + 1)
+			// The new year weighs 1/10,001: the quotient is off by that times the curvature.
+			if math.Abs(influence[i]-moved) > 2e-3*(1+math.Abs(moved)) {
+				t.Errorf("%v: influence of year %d is %v, it moves capital by %v", basis, i, influence[i], moved)
+			}
+		}
+	}
+	if !slices.Equal(repeated, before) {
+		t.Error("Influence reordered the losses")
+	}
+}
+
+// TestInfluenceOfAClippedAmount: capital held at 0 has none, whatever the measure; the deviation is never clipped.
+func TestInfluenceOfAClippedAmount(t *testing.T) {
+	losses := []float64{-9, -5, -4, -8, -7, -6, -3, -2, -10, -1}
+	dst := []float64{1, 1, 1, 1, 1, 1, 1, 1, 1, 1, 1, 1}
+	for _, m := range []Measure{ValueAtRisk, TailValueAtRisk} {
+		got := Standard{Measure: m, Level: level("80%"), Basis: Result}.Influence(losses, dst)
+		if len(got) != 10 || &got[0] != &dst[0] || sample.InfluenceError(got) != 0 || got[0] != 0 {
+			t.Errorf("%v: %v", m, got)
+		}
+		if got := (Standard{Measure: m, Level: level("80%"), Basis: Deviation}).Influence(losses, nil); sample.InfluenceError(got) == 0 {
+			t.Errorf("%v: a deviation without error", m)
+		}
+	}
+}
+
+// TestPresetsOnAnExponentialLaw: mean 1000, premium equal to the mean, against the closed forms VaR = −θ·ln(1−p) and TVaR = VaR + θ.
+func TestPresetsOnAnExponentialLaw(t *testing.T) {
+	const n = 200_000
+	losses := make([]float64, n)
+	for name, want := range map[string]float64{"eu-one-year": 1000*math.Log(200) - 1000, "swiss-one-year": 1000 * math.Log(100), "bermuda-one-year": 1000 * math.Log(100)} {
+		for i := range losses {
+			losses[i] = -1000*math.Log1p(-(float64(i)+0.5)/n) - 1000
+		}
+		s, ok := Preset(name)
+		if !ok {
+			t.Fatalf("no preset %q", name)
+		}
+		// The grid of midpoints leaves out what lies beyond its last quantile, 1 in 400,000: under 1e-3 of the tail's mean.
+		if got := s.Amount(losses, 0); math.Abs(got-want) > 1e-3*want {
+			t.Errorf("%s requires %v, want %v", name, got, want)
+		}
+	}
+}
+
+func TestAmountAllocatesNothing(t *testing.T) {
+	losses := make([]float64, 5000)
+	for i := range losses {
+		losses[i] = float64(i * 7919 % 5000)
+	}
+	for _, s := range Presets() {
+		if n := testing.AllocsPerRun(10, func() { s.Amount(losses, 0) }); n != 0 {
+			t.Errorf("%s: %v allocations a run", s.Name, n)
+		}
+	}
 }
 
 func ExampleStandard_Amount() {

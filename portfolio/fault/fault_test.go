@@ -4,7 +4,10 @@ import (
 	"errors"
 	"fmt"
 	"io/fs"
+	"strings"
 	"testing"
+
+	"pgregory.net/rapid"
 )
 
 func TestError(t *testing.T) {
@@ -51,6 +54,79 @@ func TestNearest(t *testing.T) {
 		if got := Nearest(word, known); got != want {
 			t.Errorf("nearest to %q is %q, want %q", word, got, want)
 		}
+	}
+}
+
+// TestDistance compares with the plain recursion of the definition (optimal string alignment), for all pairs of short words.
+func TestDistance(t *testing.T) {
+	var plain func(a, b string) int
+	plain = func(a, b string) int {
+		switch {
+		case a == "":
+			return len(b)
+		case b == "":
+			return len(a)
+		case a[0] == b[0]:
+			return plain(a[1:], b[1:])
+		}
+		least := 1 + min(plain(a[1:], b), plain(a, b[1:]), plain(a[1:], b[1:]))
+		if len(a) > 1 && len(b) > 1 && a[0] == b[1] && a[1] == b[0] {
+			least = min(least, 1+plain(a[2:], b[2:]))
+		}
+		return least
+	}
+	words := []string{""}
+	for i := 0; len(words) < 121; i++ { // all words of up to four letters of a, b and c
+		for _, letter := range "abc" {
+			words = append(words, words[i]+string(letter))
+		}
+	}
+	for _, a := range words {
+		for _, b := range words {
+			if got, want := distance(a, b), plain(a, b); got != want || got != distance(b, a) {
+				t.Fatalf("distance of %q and %q is %d, and %d the other way, want %d", a, b, got, distance(b, a), want)
+			}
+		}
+	}
+	if d := distance("café", "cafe"); d != 1 {
+		t.Errorf("a letter outside ASCII counts as %d changes", d)
+	}
+}
+
+// TestNearestByProperty: a known word is its own nearest, and so is the word when one letter of a long word is wrong.
+func TestNearestByProperty(t *testing.T) {
+	known := []string{"retention", "limit", "share", "reinstatements", "annual_deductible", "annual_limit", "event_limit", "cession", "commission"}
+	rapid.Check(t, func(t *rapid.T) {
+		word := rapid.SampledFrom(known).Draw(t, "word")
+		if got := Nearest(strings.ToUpper(word), known); got != word {
+			t.Fatalf("nearest to %q itself is %q", word, got)
+		}
+		i := rapid.IntRange(0, len(word)-1).Draw(t, "letter")
+		for _, wrong := range []string{word[:i] + word[i+1:], word[:i] + "x" + word[i+1:], word[:i] + "x" + word[i:]} {
+			if got := Nearest(wrong, known); got != word {
+				t.Fatalf("nearest to %q is %q, want %q", wrong, got, word)
+			}
+		}
+	})
+}
+
+// TestErrorKeepsEverything: joined faults give one line each, in order, and their causes are found through any wrapping.
+func TestErrorKeepsEverything(t *testing.T) {
+	var l List
+	for i := range 30 {
+		l.Add(Fault{File: "losses.csv", Line: i + 2, Found: "a negative loss"})
+	}
+	l.Add(Fault{Found: "unreadable", Err: fs.ErrPermission})
+	err := fmt.Errorf("loss: read: %w", fmt.Errorf("again: %w", l.Err()))
+	if lines := strings.Split(l.Err().Error(), "\n"); len(lines) != 31 || lines[29] != "losses.csv:31: a negative loss" {
+		t.Errorf("%d lines: %q", len(lines), lines)
+	}
+	if all := All(err); len(all) != 31 || all[7].Line != 9 {
+		t.Errorf("%d faults", len(all))
+	}
+	var first *Fault
+	if !errors.As(err, &first) || first.Line != 2 || !errors.Is(err, fs.ErrPermission) {
+		t.Error("a fault or its cause is lost in wrapping")
 	}
 }
 
