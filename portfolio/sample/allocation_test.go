@@ -138,6 +138,21 @@ func allocate(lines [][]float64, g func(float64) float64) []float64 {
 	return parts
 }
 
+// TestTies: values within 1e-9 of the greatest size in the sample count as one atom from its top; a chain of near values is not one atom.
+func TestTies(t *testing.T) {
+	xi := AllocationWeights([]float64{1, 1 + 1.6e-9, 1 + 0.8e-9}, wang(0.5))
+	if xi[1] != xi[2] || xi[0] >= xi[1] {
+		t.Errorf("weights %v: the upper two tie, the lowest does not", xi)
+	}
+	// Rounding of a net result, as 0.1+0.2 against 0.3, parts no atom.
+	if xi := AllocationWeights([]float64{0.1 + 0.2, 0.3, -1}, wang(0.5)); xi[0] != xi[1] {
+		t.Errorf("weights %v: the first two tie", xi)
+	}
+	if xi := AllocationWeights([]float64{0, 0, 0, 0}, wang(0.5)); xi[0] != 1 || xi[3] != 1 {
+		t.Errorf("weights %v of equal values, want 1", xi)
+	}
+}
+
 // part gives which part of an allocation a published quantity means, and the text before it.
 func part(t *testing.T, quantity string, lines int) (measure string, index int) {
 	t.Helper()

@@ -150,6 +150,17 @@ func TestInfluenceIsADerivative(t *testing.T) {
 	}
 }
 
+// TestInfluenceWithAJump: a constant cost of capital ι is (s+ι)/(1+ι) above 0: beyond its jump it is the mean over 1+ι, and the jump's
+// weight on the largest value is left out, as documented.
+func TestInfluenceWithAJump(t *testing.T) {
+	values := []float64{5, -2, 0, 0, 31, 7, 7, 12}
+	g := distortionOf(t, "constant-cost-of-capital 0.25")
+	got, mean := DistortedInfluence(values, g, nil), MeanInfluence(values, nil)
+	for i := range got {
+		closeTo(t, "influence", got[i], mean[i]/1.25, 1e-12) // rounding
+	}
+}
+
 func TestInfluenceReusesMemory(t *testing.T) {
 	values, dst := []float64{3, 1, 2}, make([]float64, 8)
 	for name, got := range map[string][]float64{

@@ -301,6 +301,12 @@ func TestNewRefuses(t *testing.T) {
 			t.Errorf("%s was accepted", name)
 		}
 	}
+	if s := sampleOf(t, 1, 3); s.StandardDeviation() != math.Sqrt2 || s.MeanError() != 1 { // divisor N − 1
+		t.Errorf("standard deviation %v, error of the mean %v", s.StandardDeviation(), s.MeanError())
+	}
+	if s := sampleOf(t, 5); s.StandardDeviation() != 0 || s.VaR(level(t, "99%")) != 5 || s.TVaR(level(t, "99%")) != 5 {
+		t.Error("a single value is not its own measure")
+	}
 	s := sampleOf(t, 3, 1, 2, 2)
 	if s.Survival(2) != 0.25 || s.AtLeast(2) != 0.75 || s.OrderStatistic(1) != 1 || s.Len() != 4 {
 		t.Errorf("survival %v, at least %v", s.Survival(2), s.AtLeast(2))
