@@ -120,7 +120,7 @@ func All(err error) []*Fault {
 }
 
 // Nearest gives the known word closest to word, by number of single-letter changes, ignoring case; "" when none is close
-// enough to be a likely misspelling (more than a third of the letters differ, and at least more than two).
+// enough to be a likely misspelling (more than a third of the letters differ, and at least more than two, or no letter is right).
 func Nearest(word string, known []string) string {
 	best, bestDistance := "", 1<<30
 	lower := strings.ToLower(word)
@@ -129,7 +129,8 @@ func Nearest(word string, known []string) string {
 			best, bestDistance = k, d
 		}
 	}
-	if bestDistance > max(2, len([]rune(word))/3) {
+	letters := len([]rune(word))
+	if bestDistance > max(2, letters/3) || bestDistance >= max(letters, len([]rune(best))) {
 		return ""
 	}
 	return best

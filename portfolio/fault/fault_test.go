@@ -55,6 +55,11 @@ func TestNearest(t *testing.T) {
 			t.Errorf("nearest to %q is %q, want %q", word, got, want)
 		}
 	}
+	for _, word := range []string{"", "by"} { // no letter in common
+		if got := Nearest(word, []string{"to"}); got != "" {
+			t.Errorf("nearest to %q is %q, want none", word, got)
+		}
+	}
 }
 
 // TestDistance compares with the plain recursion of the definition (optimal string alignment), for all pairs of short words.
