@@ -13,7 +13,6 @@ import (
 	"sync/atomic"
 	"testing"
 
-	"cedewright/optimize/internal/ga"
 	"cedewright/portfolio/treaty"
 
 	"pgregory.net/rapid"
@@ -398,71 +397,4 @@ func TestSize(t *testing.T) {
 	if float64(r.Evaluations) != space.Size() || r.Status != Proven {
 		t.Errorf("%d programmes enumerated, size %v", r.Evaluations, space.Size())
 	}
-}
-
-// zdt1 is the usual test problem with two objectives (Zitzler, Deb and Thiele 2000), on a grid of 100 steps in ten variables.
-type zdt1 struct{}
-
-func (zdt1) Random(r *rand.Rand) []int {
-	p := make([]int, 10)
-	for i := range p {
-		p[i] = r.Intn(101)
-	}
-	return p
-}
-
-func (zdt1) Cross(receiver, mate []int, r *rand.Rand) {
-	for i := range receiver {
-		if r.Intn(2) == 0 {
-			receiver[i] = mate[i]
-		}
-	}
-}
-
-func (zdt1) Mutate(p []int, r *rand.Rand) {
-	i := r.Intn(len(p))
-	p[i] = min(max(p[i]+r.Intn(21)-10, 0), 100)
-}
-
-func (zdt1) Evaluate(plans [][]int) ([]ga.Score, error) {
-	scores := make([]ga.Score, len(plans))
-	for i, p := range plans {
-		x, sum := float64(p[0])/100, 0.0
-		for _, v := range p[1:] {
-			sum += float64(v) / 100
-		}
-		g := 1 + sum
-		scores[i] = ga.Score{Objectives: [2]float64{x, g * (1 - math.Sqrt(x/g))}, Scalar: x + g*(1-math.Sqrt(x/g))}
-	}
-	return scores, nil
-}
-
-// TestFrontOfKnownProblem: the engine reaches the known front y = 1 − √x of ZDT1 over its whole width.
-func TestFrontOfKnownProblem(t *testing.T) {
-	seen := &collecting{}
-	if err := ga.Run(seen, ga.Settings{Population: 60, Generations: 150, Seed: 4}); err != nil {
-		t.Fatal(err)
-	}
-	for x := 0.0; x < 1; x += 0.1 {
-		best := math.Inf(1)
-		for _, s := range seen.scores {
-			if s.Objectives[0] <= x+1e-9 {
-				best = min(best, s.Objectives[1])
-			}
-		}
-		if best > 1-math.Sqrt(x)+0.05 {
-			t.Errorf("at x ≤ %.1f the front is at %v, known %v", x, best, 1-math.Sqrt(x))
-		}
-	}
-}
-
-type collecting struct {
-	zdt1
-	scores []ga.Score
-}
-
-func (c *collecting) Evaluate(plans [][]int) ([]ga.Score, error) {
-	scores, err := c.zdt1.Evaluate(plans)
-	c.scores = append(c.scores, scores...)
-	return scores, err
 }

@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math/rand"
 	randv2 "math/rand/v2"
+	"runtime/debug"
 
 	"github.com/MaxHalford/eaopt"
 )
@@ -33,7 +34,7 @@ type Settings struct {
 	Stop        func(generation int) bool // asked after every generation
 }
 
-// MutationRate is the share of children that are mutated after crossing; all others are crossings alone.
+// mutationRate is the share of children that are mutated after crossing; all others are crossings alone.
 const mutationRate = 0.8
 
 // eliteShare is the share of a generation that is kept by the scalar alone; the rest is kept by rank and crowding of the two objectives.
@@ -47,9 +48,9 @@ func Run(p Problem, s Settings) error {
 	config.NGenerations = uint(s.Generations)
 	config.HofSize = 1
 	config.ParallelEval = false
-	m := &model{problem: p, size: s.Population}
+	m := &model{problem: p, size: s.Population, random: rand.New(source{randv2.NewPCG(s.Seed, 0x9e3779b97f4a7c15)})}
 	config.Model = m
-	config.RNG = rand.New(source{randv2.NewPCG(s.Seed, 0x9e3779b97f4a7c15)})
+	config.RNG = m.random
 	generation := -1 // eaopt calls back once after making the first generation, before any is scored
 	config.Callback = func(*eaopt.GA) { generation++ }
 	config.EarlyStop = func(*eaopt.GA) bool { return generation > 0 && s.Stop != nil && s.Stop(generation) }
@@ -58,24 +59,27 @@ func Run(p Problem, s Settings) error {
 		return fmt.Errorf("ga: %w", err)
 	}
 	next := 0
-	err = search.Minimize(func(r *rand.Rand) eaopt.Genome {
+	err = search.Minimize(func(*rand.Rand) eaopt.Genome {
 		g := &genome{problem: p}
 		if next < len(s.Starts) {
 			g.plan = append([]int(nil), s.Starts[next]...)
 			next++
 		} else {
-			g.plan = p.Random(r)
+			g.plan = p.Random(m.random)
 		}
 		return g
 	})
 	if m.err != nil {
 		return m.err
 	}
+	if err == nil && generation == s.Generations && s.Stop != nil {
+		s.Stop(generation) // eaopt asks before a generation, hence not after the last
+	}
 	return err
 }
 
-// source lets eaopt, which wants the first version of the library, draw from a PCG of 128 bits: its own source would make seeds that are
-// equal modulo 2³¹−1 the same.
+// source lets code that wants the first version of the library draw from a PCG of 128 bits. Everything random is drawn from it: eaopt's own
+// generators of a population make seeds that are equal modulo 2³¹−1 the same.
 type source struct{ pcg *randv2.PCG }
 
 func (s source) Int63() int64   { return int64(s.pcg.Uint64() >> 1) }
@@ -117,34 +121,28 @@ func (g *genome) Clone() eaopt.Genome {
 type model struct {
 	problem Problem
 	size    int
+	random  *rand.Rand
 	err     error
 }
 
 // Validate has nothing to check.
 func (m *model) Validate() error { return nil }
 
-// Apply makes the next generation in place.
-func (m *model) Apply(pop *eaopt.Population) error {
+// Apply makes the next generation in place. A panic, which only a mistake of the program's could cause, becomes an error: eaopt calls from
+// a goroutine of its own, whose panic the caller could not stop.
+func (m *model) Apply(pop *eaopt.Population) (err error) {
+	defer func() {
+		if fault := recover(); fault != nil {
+			err = fmt.Errorf("ga: internal error in a generation: %v\n%s", fault, debug.Stack())
+		}
+		m.err = err
+	}()
 	parents := genomes(pop.Individuals)
 	if err := m.score(parents); err != nil {
-		m.err = err
 		return err
 	}
-	order := rank(parents)
-	children := make([]*genome, 0, m.size)
-	for range m.size {
-		scalar := pop.RNG.Intn(2) == 0 // half of the parents are chosen by the scalar, half for the spread of the front
-		mother := parents[tournament(parents, order, scalar, pop.RNG)]
-		father := parents[tournament(parents, order, scalar, pop.RNG)]
-		child := mother.Clone().(*genome)
-		child.Crossover(father, pop.RNG)
-		if pop.RNG.Float64() < mutationRate {
-			child.Mutate(pop.RNG)
-		}
-		children = append(children, child)
-	}
+	children := m.children(parents)
 	if err := m.score(children); err != nil {
-		m.err = err
 		return err
 	}
 	survivors := survive(append(parents, children...), m.size)
@@ -154,6 +152,24 @@ func (m *model) Apply(pop *eaopt.Population) error {
 		pop.Individuals[i].Evaluated = true
 	}
 	return nil
+}
+
+// children crosses and mutates parents chosen by tournament: half of them by the scalar, half for the spread of the front.
+func (m *model) children(parents []*genome) []*genome {
+	order := rank(parents)
+	children := make([]*genome, 0, m.size)
+	for range m.size {
+		scalar := m.random.Intn(2) == 0
+		mother := parents[tournament(parents, order, scalar, m.random)]
+		father := parents[tournament(parents, order, scalar, m.random)]
+		child := mother.Clone().(*genome)
+		child.Crossover(father, m.random)
+		if m.random.Float64() < mutationRate {
+			child.Mutate(m.random)
+		}
+		children = append(children, child)
+	}
+	return children
 }
 
 func genomes(individuals eaopt.Individuals) []*genome {
@@ -173,6 +189,9 @@ func (m *model) score(list []*genome) error {
 			fresh = append(fresh, g)
 			plans = append(plans, g.plan)
 		}
+	}
+	if len(fresh) == 0 {
+		return nil
 	}
 	scores, err := m.problem.Evaluate(plans)
 	if err != nil {

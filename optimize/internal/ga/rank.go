@@ -5,15 +5,16 @@ import (
 	"math"
 	"math/rand"
 	"slices"
+	"sort"
 )
 
-// Order is the place of a plan among others: the front on which it lies, from 0, and how far its neighbours on that front are.
+// place is the place of a plan among others: the front on which it lies, from 0, and how far its neighbours on that front are.
 type place struct {
 	front    int
 	crowding float64
 }
 
-// Dominates tells whether a is better than b: feasible before infeasible, less violation before more, else not worse in both objectives
+// dominates tells whether a is better than b: feasible before infeasible, less violation before more, else not worse in both objectives
 // and better in one (Deb, Pratap, Agarwal and Meyarivan 2002).
 func dominates(a, b Score) bool {
 	switch {
@@ -25,26 +26,36 @@ func dominates(a, b Score) bool {
 	return a.Objectives[0] <= b.Objectives[0] && a.Objectives[1] <= b.Objectives[1] && a.Objectives != b.Objectives
 }
 
-// rank sorts into fronts that do not dominate one another and measures crowding within each (the same paper).
+// rank sorts into fronts that do not dominate one another and measures crowding within each (the same paper). With two objectives one sweep
+// by the first objective does: a plan belongs to the first front whose latest member, the smallest in the second objective so far, does
+// not dominate it; and every front before that one has a member that does, so the place is found by halving.
 func rank(list []*genome) []place {
-	places := make([]place, len(list))
-	remaining := make([]int, len(list))
-	for i := range remaining {
-		remaining[i] = i
+	order := make([]int, len(list))
+	for i := range order {
+		order[i] = i
 	}
-	for front := 0; len(remaining) > 0; front++ {
-		var here, rest []int
-		for _, i := range remaining {
-			beaten := slices.ContainsFunc(remaining, func(j int) bool { return dominates(list[j].score, list[i].score) })
-			if beaten {
-				rest = append(rest, i)
-			} else {
-				here = append(here, i)
-				places[i].front = front
-			}
+	slices.SortStableFunc(order, func(i, j int) int {
+		a, b := list[i].score, list[j].score
+		if c := cmp.Compare(a.Violation, b.Violation); c != 0 || a.Violation > 0 {
+			return c
 		}
-		crowd(list, here, places)
-		remaining = rest
+		return cmp.Or(cmp.Compare(a.Objectives[0], b.Objectives[0]), cmp.Compare(a.Objectives[1], b.Objectives[1]))
+	})
+	var fronts [][]int
+	for _, i := range order {
+		k := sort.Search(len(fronts), func(k int) bool { return !dominates(list[fronts[k][len(fronts[k])-1]].score, list[i].score) })
+		if k == len(fronts) {
+			fronts = append(fronts, nil)
+		}
+		fronts[k] = append(fronts[k], i)
+	}
+	places := make([]place, len(list))
+	for k, front := range fronts {
+		for _, i := range front {
+			places[i].front = k
+		}
+		slices.Sort(front) // ties of crowding go by place in the list
+		crowd(list, front, places)
 	}
 	return places
 }
