@@ -3,7 +3,6 @@ package optimize
 import (
 	"context"
 	"fmt"
-	"math"
 	"runtime/debug"
 	"sync"
 
@@ -120,29 +119,21 @@ func (a *archive) appraise(plans []plan) ([]record, error) {
 	return records, nil
 }
 
-// appraiseOne appraises one plan.
-func (a *archive) appraiseOne(p plan) (record, error) {
-	result, err := a.safely(p)
-	if err != nil {
-		return record{}, err
-	}
-	r := record{plan: p, margin: result.CededMargin.Value, cost: result.TotalCost.Value, violation: a.coder.space.violation(result)}
-	if len(result.Capital) > 0 {
-		r.relief = result.Capital[0].Relief.Value
-	}
-	if sum := r.margin + r.cost + r.relief; math.IsNaN(sum) || math.IsInf(sum, 0) {
-		return record{}, fmt.Errorf("optimize: search: a programme has ceded margin %v, relief %v and total cost %v, which are beyond the numbers that can be compared: %+v", r.margin, r.relief, r.cost, result.Programme.Treaties)
-	}
-	return r, nil
-}
-
-// safely appraises one plan. A panic, which only a mistake of the program's could cause, becomes an error: in a worker it would otherwise
-// end the process without a word.
-func (a *archive) safely(p plan) (result Appraisal, err error) {
+// appraiseOne appraises one plan. A panic, which only a mistake of the program's could cause, becomes an error: in a worker it would
+// otherwise end the process without a word.
+func (a *archive) appraiseOne(p plan) (r record, err error) {
 	defer func() {
 		if fault := recover(); fault != nil {
 			err = fmt.Errorf("optimize: search: internal error in the appraisal of a plan: %v\n%s", fault, debug.Stack())
 		}
 	}()
-	return a.evaluator.Appraise(a.coder.decode(p), false)
+	result, err := a.evaluator.Appraise(a.coder.decode(p), false)
+	if err != nil {
+		return record{}, err
+	}
+	r = record{plan: p, margin: result.CededMargin.Value, cost: result.TotalCost.Value, violation: a.coder.space.violation(result)}
+	if len(result.Capital) > 0 {
+		r.relief = result.Capital[0].Relief.Value
+	}
+	return r, nil
 }

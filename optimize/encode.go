@@ -3,7 +3,6 @@ package optimize
 import (
 	"cmp"
 	"slices"
-	"strconv"
 	"strings"
 
 	"cedewright/portfolio/treaty"
@@ -22,7 +21,9 @@ func (c *coder) encode(p treaty.Programme) (best plan, moved bool) {
 	for _, v := range c.varies {
 		i := slices.IndexFunc(p.Treaties, func(t treaty.Treaty) bool { return t.Name == v.v.Treaty })
 		if i < 0 || p.Treaties[i].Placed() == 0 {
-			moved = moved || !v.absent(best)
+			if v.bought < 0 && v.share < 0 && v.cession < 0 {
+				moved = true
+			}
 			continue
 		}
 		t := p.Treaties[i]
@@ -58,7 +59,7 @@ func (r ReinstatementRange) encode(t treaty.Treaty, gene *int) (moved bool) {
 func (t towerGenes) encode(p treaty.Programme, best plan) (moved bool) {
 	var layers []treaty.Treaty
 	for _, u := range p.Treaties {
-		if u.Placed() > 0 && (slices.Contains(t.t.Replaces, u.Name) || t.t.layerNumber(u.Name) > 0) {
+		if u.Placed() > 0 && (slices.Contains(t.t.Replaces, u.Name) || t.named(u.Name)) {
 			layers = append(layers, u)
 		}
 	}
@@ -66,45 +67,38 @@ func (t towerGenes) encode(p treaty.Programme, best plan) (moved bool) {
 		return false
 	}
 	slices.SortStableFunc(layers, func(a, b treaty.Treaty) int { return cmp.Compare(a.Retention, b.Retention) })
-	list := make([]segment, 0, len(layers))
-	reached, last := 0, t.grid.count()-1
-	for _, u := range layers {
-		if reached == last {
-			moved = true
-			break
-		}
+	if len(layers) > t.t.Layers {
+		layers, moved = layers[:t.t.Layers], true
+	}
+	best[t.bought] = 1
+	for i, u := range layers {
 		low, exactLow := t.grid.nearest(u.Retention)
 		high, exactHigh := t.grid.nearest(u.Retention + u.Limit)
 		share, exactShare := t.t.Share.nearest(u.Share)
-		s := segment{low: min(max(low, reached), last-1), share: share}
-		s.high = max(high, s.low+1)
-		if t.t.Share.at(s.share) == 0 {
-			s.share = min(1, t.t.Share.count()-1) // the least that is placed
+		if i > 0 && low != best[t.cuts+i] {
+			moved = true // a gap or an overlap, which a tower does not have
 		}
+		if i == 0 {
+			best[t.cuts] = low
+		}
+		best[t.cuts+i+1] = max(high, best[t.cuts+i]+1)
+		best[t.shares+i] = share
+		moved = moved || !exactLow || !exactHigh || !exactShare
 		if t.amounts >= 0 {
-			moved = t.t.Reinstatements.encode(u, &s.amount) || moved
+			moved = t.t.Reinstatements.encode(u, &best[t.amounts+i]) || moved
 		}
-		moved = moved || !exactLow || !exactHigh || !exactShare || s.low != low || s.high != high || !t.like(u)
-		list = append(list, s)
-		reached = s.high
 	}
-	return t.write(best, list) || moved
+	for i := len(layers) + 1; i <= t.t.Layers; i++ {
+		best[t.cuts+i] = best[t.cuts+len(layers)]
+	}
+	if best[t.cuts] > t.lowest || best[t.cuts+len(layers)] < t.topFirst {
+		moved = true
+	}
+	return moved
 }
 
-// like tells whether a treaty has the terms that all layers of the tower have.
-func (t towerGenes) like(u treaty.Treaty) bool {
-	v := t.t.Template
-	sameAnnual := t.amounts >= 0 || u.AnnualLimit == v.AnnualLimit && (u.Reinstatements == nil) == (v.Reinstatements == nil) && slices.Equal(u.Reinstatements, v.Reinstatements)
-	return sameAnnual && u.Kind == v.Kind && u.AnnualDeductible == v.AnnualDeductible && u.EventLimit == v.EventLimit &&
-		u.Premium == v.Premium && (u.Curve == v.Curve || u.Premium.Given) && sameNames(u.Classes, v.Classes) && sameNames(u.Perils, v.Perils)
-}
-
-// layerNumber gives n for the name of the tower's layer n, 0 for any other name.
-func (t Tower) layerNumber(name string) int {
-	rest, ok := strings.CutPrefix(name, t.Name+" ")
-	n, err := strconv.Atoi(rest)
-	if !ok || err != nil || n < 1 || strconv.Itoa(n) != rest {
-		return 0
-	}
-	return n
+// named tells whether a treaty bears the name of one of the tower's layers.
+func (t towerGenes) named(name string) bool {
+	rest, ok := strings.CutPrefix(name, t.t.Name+" ")
+	return ok && len(rest) > 0 && rest[0] >= '1' && rest[0] <= '9'
 }

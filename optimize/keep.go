@@ -19,29 +19,28 @@ type Keep struct {
 
 // measures are the figures that can be constrained, each read off an appraisal, given the place of the standard.
 var measures = []struct {
-	name       string
-	byStandard bool // the figure is one per standard
-	read       func(a Appraisal, standard int) float64
+	name string
+	read func(a Appraisal, standard int) float64
 }{
-	{"ceded premium", false, func(a Appraisal, _ int) float64 { return a.CededPremium.Value }},
-	{"ceded margin", false, func(a Appraisal, _ int) float64 { return a.CededMargin.Value }},
-	{"expected recoveries", false, func(a Appraisal, _ int) float64 { return a.ExpectedRecoveries.Value }},
-	{"reinstatement premium", false, func(a Appraisal, _ int) float64 { return a.ReinstatementPremium.Value }},
-	{"commission", false, func(a Appraisal, _ int) float64 { return a.Commission.Value }},
-	{"required capital", true, func(a Appraisal, s int) float64 { return a.Capital[s].Net.Value }},
-	{"capital relief", true, func(a Appraisal, s int) float64 { return a.Capital[s].Relief.Value }},
-	{"own funds ratio", true, func(a Appraisal, s int) float64 {
+	{"ceded premium", func(a Appraisal, _ int) float64 { return a.CededPremium.Value }},
+	{"ceded margin", func(a Appraisal, _ int) float64 { return a.CededMargin.Value }},
+	{"expected recoveries", func(a Appraisal, _ int) float64 { return a.ExpectedRecoveries.Value }},
+	{"reinstatement premium", func(a Appraisal, _ int) float64 { return a.ReinstatementPremium.Value }},
+	{"commission", func(a Appraisal, _ int) float64 { return a.Commission.Value }},
+	{"required capital", func(a Appraisal, s int) float64 { return a.Capital[s].Net.Value }},
+	{"capital relief", func(a Appraisal, s int) float64 { return a.Capital[s].Relief.Value }},
+	{"own funds ratio", func(a Appraisal, s int) float64 {
 		if s < len(a.OwnFundsRatio) {
 			return a.OwnFundsRatio[s].Value
 		}
 		return math.NaN()
 	}},
-	{"capital cost", false, func(a Appraisal, _ int) float64 { return a.CapitalCost.Value }},
-	{"total cost", false, func(a Appraisal, _ int) float64 { return a.TotalCost.Value }},
-	{"mean result", false, func(a Appraisal, _ int) float64 { return a.NetResult.Mean.Value }},
-	{"result standard deviation", false, func(a Appraisal, _ int) float64 { return a.NetResult.StandardDeviation }},
-	{"one in 10 result", false, func(a Appraisal, _ int) float64 { return a.NetResult.OneIn10.Value }},
-	{"one in 200 result", false, func(a Appraisal, _ int) float64 { return a.NetResult.OneIn200.Value }},
+	{"capital cost", func(a Appraisal, _ int) float64 { return a.CapitalCost.Value }},
+	{"total cost", func(a Appraisal, _ int) float64 { return a.TotalCost.Value }},
+	{"mean result", func(a Appraisal, _ int) float64 { return a.NetResult.Mean.Value }},
+	{"result standard deviation", func(a Appraisal, _ int) float64 { return a.NetResult.StandardDeviation }},
+	{"one in 10 result", func(a Appraisal, _ int) float64 { return a.NetResult.OneIn10.Value }},
+	{"one in 200 result", func(a Appraisal, _ int) float64 { return a.NetResult.OneIn200.Value }},
 }
 
 // MeasureNames lists the measures that Keep knows.
@@ -60,31 +59,9 @@ func (k Keep) check(faults *fault.List, key string) {
 	if !k.AtMost.Given && !k.AtLeast.Given {
 		faults.Add(fault.Fault{Key: key, Found: "no bound", Allowed: "at_most, at_least or both"})
 	}
-	if k.AtMost.Given && math.IsNaN(k.AtMost.Value) || k.AtLeast.Given && math.IsNaN(k.AtLeast.Value) {
-		faults.Add(fault.Fault{Key: key, Found: "a bound that is not a number", Allowed: "numbers"})
-	}
 	if k.AtMost.Given && k.AtLeast.Given && k.AtMost.Value < k.AtLeast.Value {
 		faults.Add(fault.Fault{Key: key, Found: fmt.Sprintf("at most %v and at least %v", k.AtMost.Value, k.AtLeast.Value), Allowed: "bounds that leave room"})
 	}
-}
-
-// checkAgainst reports constraints that an appraisal cannot answer: on a standard that it does not have, or on the own funds ratio without
-// own funds.
-func (s Space) checkAgainst(a Appraisal) error {
-	var faults fault.List
-	names := make([]string, len(a.Capital))
-	for i, c := range a.Capital {
-		names[i] = c.Standard
-	}
-	for i, k := range s.Keep {
-		key := fmt.Sprintf("keep[%d]", i)
-		if k.Standard != "" && !slices.Contains(names, k.Standard) {
-			faults.Add(fault.Fault{Key: key + ".standard", Found: fmt.Sprintf("no standard is named %q", k.Standard), Allowed: fmt.Sprintf("%q", names), Nearest: fault.Nearest(k.Standard, names)})
-		} else if math.IsNaN(k.value(a)) {
-			faults.Add(fault.Fault{Key: key + ".measure", Found: k.Measure + ", which an appraisal without own funds does not have", Allowed: "own funds, or another measure"})
-		}
-	}
-	return faults.Err()
 }
 
 // value reads the measure; NaN when the appraisal does not have it (an own funds ratio without own funds).
@@ -96,35 +73,27 @@ func (k Keep) value(a Appraisal) float64 {
 		}
 	}
 	for _, m := range measures {
-		if m.name == k.Measure && (standard < len(a.Capital) || !m.byStandard) {
+		if m.name == k.Measure {
 			return m.read(a, standard)
 		}
 	}
 	return math.NaN()
 }
 
-// violation is how far the measure lies outside its bounds, as a fraction of the bound, or of the gross required capital where the bound
-// is 0; 0 inside.
+// violation is how far the measure lies outside its bounds, as a fraction of the bound; 0 inside.
 func (k Keep) violation(a Appraisal) float64 {
 	value := k.value(a)
 	if math.IsNaN(value) {
 		return 1
 	}
-	beyond, bound := 0.0, 0.0
-	switch {
-	case k.AtMost.Given && value > k.AtMost.Value:
-		beyond, bound = value-k.AtMost.Value, k.AtMost.Value
-	case k.AtLeast.Given && value < k.AtLeast.Value:
-		beyond, bound = k.AtLeast.Value-value, k.AtLeast.Value
+	worst := 0.0
+	if k.AtMost.Given && value > k.AtMost.Value {
+		worst = (value - k.AtMost.Value) / max(math.Abs(k.AtMost.Value), 1e-9)
 	}
-	scale := math.Abs(bound)
-	if scale == 0 && len(a.Capital) > 0 {
-		scale = a.Capital[0].Gross.Value
+	if k.AtLeast.Given && value < k.AtLeast.Value {
+		worst = (k.AtLeast.Value - value) / max(math.Abs(k.AtLeast.Value), 1e-9)
 	}
-	if scale == 0 {
-		scale = 1
-	}
-	return min(beyond/scale, math.MaxFloat32) // finite, so that violations can be added up
+	return min(worst, math.MaxFloat32)
 }
 
 // Shortfall is a constraint that a programme breaks, and by how much.
@@ -144,10 +113,9 @@ func (s Space) shortfalls(a Appraisal) []Shortfall {
 	return list
 }
 
-// violation adds up how far all constraints are broken; 0 = feasible. A treaty without a taker counts as one whole constraint, and so does
-// a layer that is placed twice over.
+// violation adds up how far all constraints are broken; 0 = feasible. A treaty without a taker counts as one whole constraint.
 func (s Space) violation(a Appraisal) float64 {
-	sum := float64(len(a.NoTaker)) + overplaced(a.Programme)
+	sum := float64(len(a.NoTaker))
 	for _, k := range s.Keep {
 		sum += k.violation(a)
 	}

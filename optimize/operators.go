@@ -39,14 +39,11 @@ func (c *coder) cross(receiver, mate plan, r *rand.Rand) {
 	for _, v := range c.varies {
 		whole := r.Intn(2) == 0
 		take := r.Intn(2) == 0
-		if v.absent(receiver) || v.absent(mate) {
-			whole = true // the terms of what is not placed are no terms
-		}
-		for _, place := range v.genes() {
+		for _, place := range []int{v.bought, v.retention, v.limit, v.share, v.cession, v.deductible, v.amount} {
 			if !whole {
 				take = r.Intn(2) == 0
 			}
-			if take {
+			if place >= 0 && take {
 				receiver[place] = mate[place]
 			}
 		}
@@ -65,26 +62,51 @@ func (t towerGenes) cross(receiver, mate plan, r *rand.Rand) {
 		}
 	default: // the lower part of the receiver, the upper part of the mate
 		height := r.Intn(t.grid.count())
-		var list []segment
-		for _, s := range t.segments(receiver) {
-			if s.high = min(s.high, height); s.low < s.high {
-				list = append(list, s)
+		var cuts, shares, amounts []int
+		add := func(p plan, i, low, high int) {
+			if low >= high || len(shares) == t.t.Layers {
+				return
+			}
+			if len(cuts) == 0 {
+				cuts = append(cuts, low)
+			}
+			cuts = append(cuts, high)
+			shares = append(shares, p[t.shares+i])
+			if t.amounts >= 0 {
+				amounts = append(amounts, p[t.amounts+i])
 			}
 		}
-		for _, s := range t.segments(mate) {
-			if s.low = max(s.low, height); s.low < s.high {
-				list = append(list, s)
+		for i := range t.t.Layers {
+			add(receiver, i, receiver[t.cuts+i], min(receiver[t.cuts+i+1], height))
+		}
+		for i := range t.t.Layers {
+			add(mate, i, max(mate[t.cuts+i], height), mate[t.cuts+i+1])
+		}
+		if len(shares) == 0 {
+			return
+		}
+		top := cuts[len(cuts)-1]
+		for i := range t.t.Layers + 1 {
+			receiver[t.cuts+i] = top
+			if i < len(cuts) {
+				receiver[t.cuts+i] = cuts[i]
 			}
 		}
-		if len(list) > 0 {
-			t.write(receiver, list)
+		for i := range shares {
+			receiver[t.shares+i] = shares[i]
+			if t.amounts >= 0 {
+				receiver[t.amounts+i] = amounts[i]
+			}
 		}
 	}
 }
 
 func (t towerGenes) copy(receiver, mate plan) {
-	for _, place := range t.genes() {
-		receiver[place] = mate[place]
+	receiver[t.bought] = mate[t.bought]
+	copy(receiver[t.cuts:t.cuts+t.t.Layers+1], mate[t.cuts:])
+	copy(receiver[t.shares:t.shares+t.t.Layers], mate[t.shares:])
+	if t.amounts >= 0 {
+		copy(receiver[t.amounts:t.amounts+t.t.Layers], mate[t.amounts:])
 	}
 }
 
@@ -102,18 +124,18 @@ func (c *coder) mutate(p plan, r *rand.Rand) {
 }
 
 func (c *coder) mutateVary(v varyGenes, p plan, r *rand.Rand) {
-	places := v.places()
-	if v.absent(p) { // its other terms are at 0, so they are drawn anew
-		for _, place := range places {
-			p[place] = r.Intn(c.genes[place].count)
+	var places []int
+	for _, place := range []int{v.retention, v.limit, v.share, v.cession, v.deductible, v.amount} {
+		if place >= 0 {
+			places = append(places, place)
 		}
-		if v.bought >= 0 {
-			p[v.bought] = 1
-		}
-		return
 	}
-	if v.bought >= 0 && (len(places) == 0 || r.Intn(6) == 0) {
-		p[v.bought] = 0
+	if v.bought >= 0 && (len(places) == 0 || r.Intn(6) == 0 || p[v.bought] == 0) {
+		if p[v.bought] = 1 - p[v.bought]; p[v.bought] == 1 {
+			for _, place := range places {
+				p[place] = r.Intn(c.genes[place].count)
+			}
+		}
 		return
 	}
 	if len(places) > 0 {

@@ -39,6 +39,19 @@ type varyGenes struct {
 	bought, retention, limit, share, cession, deductible, amount int
 }
 
+// towerGenes are the places of one tower: whether it is bought, its cuts (one more than layers), and each layer's share and count of
+// reinstatements.
+type towerGenes struct {
+	t        Tower
+	grid     Range
+	bought   int
+	cuts     int // first of Layers+1
+	shares   int // first of Layers
+	amounts  int // first of Layers; −1 = not varied
+	lowest   int // highest cut that may be the retention is lowest; places on the grid
+	topFirst int // lowest place that may be the top
+}
+
 func newCoder(s Space) *coder {
 	c := &coder{space: s}
 	add := func(name string, count int) int {
@@ -99,16 +112,59 @@ func newCoder(s Space) *coder {
 	return c
 }
 
+// size gives the number of plans before those that mean the same are told apart: an upper bound of the count of programmes.
+func (c *coder) size() float64 {
+	size := 1.0
+	for _, v := range c.varies {
+		inner := 1.0
+		for _, place := range []int{v.retention, v.limit, v.share, v.cession, v.deductible, v.amount} {
+			if place >= 0 {
+				inner *= float64(c.genes[place].count)
+			}
+		}
+		if v.bought >= 0 {
+			inner++
+		}
+		size *= inner
+	}
+	for _, t := range c.towers {
+		layer := float64(t.t.Share.count())
+		if t.amounts >= 0 {
+			layer *= float64(t.t.Reinstatements.count())
+		}
+		inner := 1.0
+		for bottom := 0; bottom <= t.lowest; bottom++ {
+			for top := max(t.topFirst, bottom+1); top < t.grid.count(); top++ {
+				ways, between := layer, float64(top-bottom-1)
+				for layers := 1; layers <= t.t.Layers; layers++ {
+					inner += ways
+					ways *= layer * (between - float64(layers-1)) / float64(layers)
+					if ways <= 0 {
+						break
+					}
+				}
+			}
+		}
+		size *= inner
+	}
+	return size
+}
+
+// Size gives the count of programmes in the space, an upper bound where different plans can mean the same programme.
+func (s Space) Size() float64 { return newCoder(s).size() }
+
 // normalise brings a plan, in place, to the canonical form of the programme that it stands for: genes within range, cuts in order, layers
-// without width dropped, the genes of what is not placed at 0.
+// without width dropped, the genes of what is not bought at 0.
 func (c *coder) normalise(p plan) plan {
 	for i, g := range c.genes {
 		p[i] = min(max(p[i], 0), g.count-1)
 	}
 	for _, v := range c.varies {
-		if v.absent(p) { // a share or cession of 0 is the first value of its range
-			for _, place := range v.genes() {
-				p[place] = 0
+		if v.bought >= 0 && p[v.bought] == 0 {
+			for _, place := range []int{v.retention, v.limit, v.share, v.cession, v.deductible, v.amount} {
+				if place >= 0 {
+					p[place] = 0
+				}
 			}
 		}
 	}
@@ -118,44 +174,41 @@ func (c *coder) normalise(p plan) plan {
 	return p
 }
 
-// A component is a varied treaty or a tower: what can be left out of a programme as a whole.
-type component interface {
-	absent(p plan) bool // not placed
-	genes() []int       // all its places; with all at 0 it is not placed, or at its least where it cannot be left out
-}
-
-func (c *coder) components() []component {
-	var list []component
-	for _, v := range c.varies {
-		list = append(list, v)
+func (t towerGenes) normalise(p plan) {
+	layers := t.t.Layers
+	cuts, shares := p[t.cuts:t.cuts+layers+1], p[t.shares:t.shares+layers]
+	amounts := make([]int, layers)
+	if t.amounts >= 0 {
+		amounts = p[t.amounts : t.amounts+layers]
 	}
-	for _, t := range c.towers {
-		list = append(list, t)
+	if p[t.bought] == 0 {
+		clear(cuts)
+		clear(shares)
+		clear(amounts)
+		return
 	}
-	return list
-}
-
-func (v varyGenes) genes() []int {
-	if v.bought >= 0 {
-		return append(v.places(), v.bought)
-	}
-	return v.places()
-}
-
-// places lists the genes of a varied treaty's terms.
-func (v varyGenes) places() []int {
-	var list []int
-	for _, place := range []int{v.retention, v.limit, v.share, v.cession, v.deductible, v.amount} {
-		if place >= 0 {
-			list = append(list, place)
+	slices.Sort(cuts)
+	cuts[0] = min(cuts[0], t.lowest)
+	cuts[layers] = max(cuts[layers], t.topFirst, cuts[0]+1)
+	kept := 0
+	for i := range layers {
+		low, high := min(max(cuts[i], cuts[0]), cuts[layers]), min(max(cuts[i+1], cuts[0]), cuts[layers])
+		if low == high {
+			continue
 		}
+		if t.t.Share.at(shares[i]) == 0 {
+			amounts[i] = 0
+		}
+		cuts[kept], shares[kept], amounts[kept] = low, shares[i], amounts[i]
+		kept++
 	}
-	return list
-}
-
-// absent tells whether a plan does not place the treaty: it is not bought, or its share or cession is 0.
-func (v varyGenes) absent(p plan) bool {
-	return v.bought >= 0 && p[v.bought] == 0 || v.share >= 0 && v.v.Share.at(p[v.share]) == 0 || v.cession >= 0 && v.v.Cession.at(p[v.cession]) == 0
+	top := cuts[layers]
+	for i := kept; i <= layers; i++ {
+		cuts[i] = top
+	}
+	for i := kept; i < layers; i++ {
+		shares[i], amounts[i] = 0, 0
+	}
 }
 
 // decode gives the programme of a plan.
@@ -236,4 +289,29 @@ func (v varyGenes) apply(p plan, t treaty.Treaty) treaty.Treaty {
 		t.Reinstatements, t.AnnualLimit = v.v.Reinstatements.at(p[v.amount]), 0
 	}
 	return t
+}
+
+// layers gives the treaties of a tower, bottom first; those of share 0 are left out.
+func (t towerGenes) layers(p plan) []treaty.Treaty {
+	if p[t.bought] == 0 {
+		return nil
+	}
+	var list []treaty.Treaty
+	for i := range t.t.Layers {
+		low, high := p[t.cuts+i], p[t.cuts+i+1]
+		share := t.t.Share.at(p[t.shares+i])
+		if high <= low || share == 0 {
+			continue
+		}
+		layer := t.t.Template
+		layer.Name = fmt.Sprintf("%s %d", t.t.Name, len(list)+1)
+		layer.Retention = t.grid.at(low)
+		layer.Limit = neat(t.grid.at(high) - layer.Retention)
+		layer.Share = share
+		if t.amounts >= 0 {
+			layer.Reinstatements = t.t.Reinstatements.at(p[t.amounts+i])
+		}
+		list = append(list, layer)
+	}
+	return list
 }

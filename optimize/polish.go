@@ -1,9 +1,9 @@
 package optimize
 
 // polish moves the best plan along the steps until no single move improves it: each gene one or two steps up or down or, where it has few
-// values, to any of them; a layer's two cuts together; two neighbouring cuts in opposite directions; a layer cut in two; a treaty or tower
-// left out, or bought as in the cheapest plan that has it. When no single move helps, moves of two genes at once are tried, and singles
-// again after a gain. It tells whether it ended where no single move improves, as against running out of budget.
+// values, to any of them; a layer's two cuts together; two neighbouring cuts in opposite directions. When no single move helps, moves of
+// two genes at once are tried, and singles again after a gain. It tells whether it ended where no single move improves, as against
+// running out of budget.
 func (r *run) polish() (bool, error) {
 	limit := len(r.archive.records) + r.settings.Evaluations/2
 	for round := 1; ; round++ {
@@ -81,35 +81,6 @@ func (r *run) singles(p plan) []plan {
 				list = append(list, r.coder.normalise(v))
 			}
 		}
-	}
-	return append(list, r.parts(p)...)
-}
-
-// parts gives the plans in which a treaty or a tower is left out or, where it is not bought, bought as in the cheapest plan appraised so
-// far that has it: one step from nothing is rarely a cover worth its price.
-func (r *run) parts(p plan) []plan {
-	var list []plan
-	for _, x := range r.coder.components() {
-		q := append(plan(nil), p...)
-		if x.absent(p) {
-			donor := -1
-			for i, o := range r.archive.records {
-				if !x.absent(o.plan) && (donor < 0 || o.cheaper(r.archive.records[donor])) {
-					donor = i
-				}
-			}
-			if donor < 0 {
-				continue
-			}
-			for _, place := range x.genes() {
-				q[place] = r.archive.records[donor].plan[place]
-			}
-		} else {
-			for _, place := range x.genes() {
-				q[place] = 0
-			}
-		}
-		list = append(list, r.coder.normalise(q))
 	}
 	return list
 }

@@ -136,14 +136,7 @@ func Search(ctx context.Context, e Evaluator, space Space, settings SearchSettin
 	if moved {
 		result.Notes = append(result.Notes, fmt.Sprintf("the start programme %q is not in the space; the search starts from its nearest member", space.Start.Name))
 	}
-	result.Notes = append(result.Notes, space.competing()...)
-	first, err := run.archive.safely(start)
-	if err != nil {
-		return Result{}, err
-	}
-	if err := space.checkAgainst(first); err != nil {
-		return Result{}, err
-	}
+	var err error
 	if result.SpaceSize <= enumerationLimit {
 		err = run.enumerate()
 		result.Status, result.Polished = Proven, true
@@ -199,7 +192,25 @@ func (r *run) report(phase string, done, total int) {
 
 // enumerate appraises every plan.
 func (r *run) enumerate() error {
-	plans := r.coder.all()
+	p := make(plan, len(r.coder.genes))
+	seen := map[string]bool{}
+	var plans []plan
+	for {
+		if q := r.coder.normalise(append(plan(nil), p...)); !seen[q.key()] {
+			seen[q.key()] = true
+			plans = append(plans, q)
+		}
+		i := 0
+		for ; i < len(p); i++ {
+			if p[i]++; p[i] < r.coder.genes[i].count {
+				break
+			}
+			p[i] = 0
+		}
+		if i == len(p) {
+			break
+		}
+	}
 	const batch = 256
 	for first := 0; first < len(plans); first += batch {
 		if _, err := r.archive.evaluate(plans[first:min(first+batch, len(plans))]); err != nil {
@@ -301,7 +312,6 @@ func (r *run) finish(result Result, e Evaluator) (Result, error) {
 	result.Best, result.Frontier = appraisals[0], appraisals[1:]
 	if !result.Feasible {
 		result.Shortfalls = r.coder.space.shortfalls(result.Best)
-		result.Notes = append(result.Notes, unplaceable(result.Best)...)
 	}
 	return result, nil
 }

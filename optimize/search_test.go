@@ -77,7 +77,7 @@ func (s shop) space(step float64) Space {
 	var space Space
 	for j := range s.Price {
 		name := fmt.Sprint(j)
-		space.Start.Treaties = append(space.Start.Treaties, treaty.Treaty{Name: name, Kind: treaty.EventExcess, Retention: float64(j), Limit: 1, Share: 1})
+		space.Start.Treaties = append(space.Start.Treaties, treaty.Treaty{Name: name, Kind: treaty.EventExcess, Limit: 1, Share: 1})
 		space.Vary = append(space.Vary, Vary{Treaty: name, Share: &Range{0, 1, step}})
 	}
 	return space

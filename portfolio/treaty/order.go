@@ -2,7 +2,6 @@ package treaty
 
 import (
 	"fmt"
-	"slices"
 	"strings"
 
 	"cedewright/portfolio/fault"
@@ -34,8 +33,7 @@ func (p Programme) Order() ([]int, error) {
 		for _, name := range t.After {
 			j, ok := place[name]
 			if !ok {
-				f := p.unknown(t, name)
-				return &f
+				return &fault.Fault{Key: t.Name + ".after", Found: fmt.Sprintf("no treaty of the programme is named %q", name), Nearest: fault.Nearest(name, p.names())}
 			}
 			if err := visit(j); err != nil {
 				return err
@@ -55,13 +53,13 @@ func (p Programme) Order() ([]int, error) {
 
 // cycle cuts a path that ends where it has been before down to the part that repeats.
 func cycle(path []string) []string {
-	return path[slices.Index(path, path[len(path)-1]):]
-}
-
-// unknown is the fault of a name in After that no treaty has.
-func (p Programme) unknown(t Treaty, name string) fault.Fault {
-	others := slices.DeleteFunc(p.names(), func(n string) bool { return n == t.Name })
-	return fault.Fault{Key: t.Name + ".after", Found: fmt.Sprintf("no treaty of the programme is named %q", name), Nearest: fault.Nearest(name, others)}
+	last := path[len(path)-1]
+	for i, name := range path {
+		if name == last {
+			return path[i:]
+		}
+	}
+	return path
 }
 
 func (p Programme) names() []string {
