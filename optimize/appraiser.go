@@ -305,9 +305,9 @@ func (a *Appraiser) priceExcess(t treaty.Treaty, s *subject, w *workspace) (*pri
 	n := float64(a.years)
 	known.recovery = sample.Sum(w.recovery) / n
 	known.reinstated = reinstated / n
-	known.attachment = a.yearsAmong(s.year[:s.above(t.Retention)]) / n
+	known.attachment = a.yearsAmong(s.year[:s.above(t.AttachmentPoint())]) / n
 	if !math.IsInf(t.Limit, 1) {
-		known.exhaustion = a.yearsAmong(s.year[:s.reaching(t.Retention+t.Limit)]) / n
+		known.exhaustion = a.yearsAmong(s.year[:s.reaching(t.ExhaustionPoint())]) / n
 	}
 	tariff, err := a.tariff(t, t.Premium.Given)
 	if err != nil {

@@ -93,15 +93,16 @@ func (a *Appraiser) lossesNetOf(p treaty.Programme, i int) []float64 {
 	if len(inuring) == 0 {
 		return losses
 	}
-	net := slices.Clone(losses)
+	recovered := make([]float64, len(losses))
 	for _, j := range inuring {
 		u := p.Treaties[j]
-		recovered := rowRecoveries(table, u, newSelection(table, u.Classes, u.Perils), a.lossesNetOf(p, j))
-		for row, r := range recovered {
-			if r > 0 {
-				net[row] = max(net[row]-float64(u.Placed()*r), 0)
-			}
+		for row, r := range rowRecoveries(table, u, newSelection(table, u.Classes, u.Perils), a.lossesNetOf(p, j)) {
+			recovered[row] += float64(u.Placed() * r)
 		}
+	}
+	net := recovered
+	for row, r := range recovered {
+		net[row] = treaty.NetOf(losses[row], r)
 	}
 	return net
 }

@@ -1,2 +1,3 @@
-// Package portfoliotest is for tests only: it reads the published values that tests hold the program against.
+// Package portfoliotest is for tests only: it reads the published values that tests hold the program against, and draws small books and
+// programmes whose recoveries it works out by brute force.
 package portfoliotest

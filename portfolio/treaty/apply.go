@@ -49,11 +49,15 @@ func Apply(table *loss.Table, p Programme) (*Outcome, error) {
 	for _, i := range order {
 		t := p.Treaties[i]
 		subject := subjectRows(table, t)
+		recovered := make([]float64, len(subject))
 		for _, name := range t.After {
 			j := slices.IndexFunc(p.Treaties, func(u Treaty) bool { return u.Name == name })
-			for row := range subject {
-				subject[row] = max(subject[row]-float64(p.Treaties[j].Placed()*outcome.Treaties[j].RowRecovery[row]), 0)
+			for row, r := range outcome.Treaties[j].RowRecovery {
+				recovered[row] += float64(p.Treaties[j].Placed() * r)
 			}
+		}
+		for row, x := range subject {
+			subject[row] = NetOf(x, recovered[row])
 		}
 		outcome.Treaties[i] = applyOne(table, t, subject)
 		for y, r := range outcome.Treaties[i].Recovery {
@@ -111,8 +115,8 @@ func applyOne(table *loss.Table, t Treaty, subject []float64) TreatyOutcome {
 		exceeds, reaches := false, false
 		for u := range units {
 			units[u].layer = t.LayerLoss(units[u].loss)
-			exceeds = exceeds || units[u].loss > t.Retention
-			reaches = reaches || units[u].loss >= t.Retention+t.Limit
+			exceeds = exceeds || units[u].loss > t.AttachmentPoint()
+			reaches = reaches || units[u].loss >= t.ExhaustionPoint()
 		}
 		if exceeds {
 			attached++

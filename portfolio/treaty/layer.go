@@ -2,6 +2,26 @@ package treaty
 
 import "math"
 
+// rounding is the part of a loss that counts as nothing when a loss is compared with a threshold. Losses net of inuring treaties carry
+// rounding errors of some 1e-16 of the gross loss, so that a net loss of exactly a retention may stand a hair above or below it; 1e-12
+// is far above that, and a millionth of a cent in ten thousand.
+const rounding = 1e-12
+
+// AttachmentPoint gives the money that a unit of loss must exceed to count as an attachment: the retention, and a hair for rounding.
+func (t Treaty) AttachmentPoint() float64 { return t.Retention * (1 + rounding) }
+
+// ExhaustionPoint gives the money that a unit of loss must reach to count as an exhaustion: retention + limit, less a hair for rounding;
+// +Inf for an unlimited layer.
+func (t Treaty) ExhaustionPoint() float64 { return (t.Retention + t.Limit) * (1 - rounding) }
+
+// NetOf gives what is left of a loss after recoveries, never below zero; what is left by rounding alone (1e-12 of the loss) is nothing.
+func NetOf(loss, recovered float64) float64 {
+	if net := loss - recovered; net > loss*rounding {
+		return net
+	}
+	return 0
+}
+
 // LayerLoss gives what falls into the layer of one unit of loss x (an event, a risk, a year): min(max(x − retention, 0), limit), for
 // 100 % of the treaty. A quota share has no layer: it gives x.
 func (t Treaty) LayerLoss(x float64) float64 {

@@ -2,6 +2,7 @@ package treaty
 
 import (
 	"fmt"
+	"slices"
 	"strings"
 
 	"cedewright/portfolio/fault"
@@ -33,7 +34,8 @@ func (p Programme) Order() ([]int, error) {
 		for _, name := range t.After {
 			j, ok := place[name]
 			if !ok {
-				return &fault.Fault{Key: t.Name + ".after", Found: fmt.Sprintf("no treaty of the programme is named %q", name), Nearest: fault.Nearest(name, p.names())}
+				f := p.unknown(t, name)
+				return &f
 			}
 			if err := visit(j); err != nil {
 				return err
@@ -53,13 +55,13 @@ func (p Programme) Order() ([]int, error) {
 
 // cycle cuts a path that ends where it has been before down to the part that repeats.
 func cycle(path []string) []string {
-	last := path[len(path)-1]
-	for i, name := range path {
-		if name == last {
-			return path[i:]
-		}
-	}
-	return path
+	return path[slices.Index(path, path[len(path)-1]):]
+}
+
+// unknown is the fault of a name in After that no treaty has.
+func (p Programme) unknown(t Treaty, name string) fault.Fault {
+	others := slices.DeleteFunc(p.names(), func(n string) bool { return n == t.Name })
+	return fault.Fault{Key: t.Name + ".after", Found: fmt.Sprintf("no treaty of the programme is named %q", name), Nearest: fault.Nearest(name, others)}
 }
 
 func (p Programme) names() []string {

@@ -65,10 +65,13 @@ func (t Treaty) validateExcess(add func(key string, found any, allowed string)) 
 			add("reinstatements", fmt.Sprintf("charge %d is %v", k+1, charge), "fractions of the base premium of at least 0")
 		}
 	}
-	if t.Reinstatements != nil && t.AnnualLimit > 0 {
+	if t.Kind == AggregateExcess || t.Reinstatements == nil {
+		return // for an aggregate-excess, validateUnused says that it has none
+	}
+	if t.AnnualLimit > 0 {
 		add("annual_limit", "given together with reinstatements", "one of the two: n reinstatements make the annual limit (n+1) limits")
 	}
-	if t.Reinstatements != nil && math.IsInf(t.Limit, 1) {
+	if math.IsInf(t.Limit, 1) {
 		add("reinstatements", "given for an unlimited layer", "a limit to reinstate")
 	}
 }
@@ -104,6 +107,7 @@ func (t Treaty) validateUnused(faults *fault.List) {
 func (p Programme) Validate(classes, perils []string) error {
 	var faults fault.List
 	seen := map[string]bool{}
+	ordered := true // the names in After make sense, so that a cycle can be looked for
 	for _, t := range p.Treaties {
 		for _, f := range fault.All(t.Validate()) {
 			f.Key = t.Name + "." + f.Key
@@ -111,21 +115,39 @@ func (p Programme) Validate(classes, perils []string) error {
 		}
 		if seen[t.Name] {
 			faults.Add(fault.Fault{Key: t.Name + ".name", Found: "two treaties of this name", Allowed: "one treaty of a name"})
+			ordered = false
 		}
 		seen[t.Name] = true
 		checkNames(&faults, t.Name+".classes", "class", t.Classes, classes)
 		checkNames(&faults, t.Name+".perils", "peril", t.Perils, perils)
-		if slices.Contains(t.After, t.Name) {
-			faults.Add(fault.Fault{Key: t.Name + ".after", Found: "the treaty itself", Allowed: "other treaties of the programme"})
-		}
+		ordered = p.checkAfter(&faults, t) && ordered
 	}
-	if faults.Len() == 0 {
-		if _, err := p.Order(); err != nil {
-			faults.AddError(err)
-		}
+	sound := faults.Len() == 0
+	if ordered {
+		_, err := p.Order()
+		faults.AddError(err)
+	}
+	if sound {
 		p.overlaps(&faults)
+		p.cessions(&faults)
 	}
 	return faults.Err()
+}
+
+// checkAfter checks the names of the treaties that inure to t, and tells whether they are all of other treaties.
+func (p Programme) checkAfter(faults *fault.List, t Treaty) bool {
+	before := faults.Len()
+	for i, name := range t.After {
+		switch {
+		case name == t.Name:
+			faults.Add(fault.Fault{Key: t.Name + ".after", Found: "the treaty itself", Allowed: "other treaties of the programme"})
+		case !slices.Contains(p.names(), name):
+			faults.Add(p.unknown(t, name))
+		case slices.Contains(t.After[:i], name):
+			faults.Add(fault.Fault{Key: t.Name + ".after", Found: fmt.Sprintf("%q twice", name), Allowed: "each name once"})
+		}
+	}
+	return faults.Len() == before
 }
 
 func checkNames(faults *fault.List, key, what string, names, known []string) {
@@ -139,22 +161,62 @@ func checkNames(faults *fault.List, key, what string, names, known []string) {
 	}
 }
 
-// overlaps reports two excess treaties of one kind on the same subject whose layers overlap while together more than 100 % of the
-// overlap is placed: the cedant would recover more than it lost.
+// sameSubject tells whether two treaties of one kind look at the same losses, as far as their terms alone can say.
+func sameSubject(t, u Treaty) bool {
+	return t.Kind == u.Kind && sameSet(t.Classes, u.Classes) && sameSet(t.Perils, u.Perils) && sameSet(t.After, u.After)
+}
+
+// overlaps reports excess treaties of one kind on the same subject whose layers overlap while together more than 100 % of the overlap
+// is placed: the cedant would recover more than it lost. Each treaty is held against those above it in the list, and blamed once.
 func (p Programme) overlaps(faults *fault.List) {
 	for i, t := range p.Treaties {
+		if t.Kind == QuotaShare {
+			continue
+		}
+		bottoms := []float64{t.Retention} // what is placed can only rise where a layer starts
 		for _, u := range p.Treaties[:i] {
-			if t.Kind != u.Kind || t.Kind == QuotaShare || !sameSet(t.Classes, u.Classes) || !sameSet(t.Perils, u.Perils) || !sameSet(t.After, u.After) {
-				continue
+			if sameSubject(t, u) && u.Retention > t.Retention && u.Retention < t.Retention+t.Limit {
+				bottoms = append(bottoms, u.Retention)
 			}
-			low, high := max(t.Retention, u.Retention), min(t.Retention+t.Limit, u.Retention+u.Limit)
-			if low < high && t.Share+u.Share > 1+1e-9 {
+		}
+		slices.Sort(bottoms)
+		for _, low := range bottoms {
+			placed, high, others := t.Share, t.Retention+t.Limit, ""
+			for _, u := range p.Treaties[:i] {
+				if sameSubject(t, u) && u.Share > 0 && u.Retention <= low && low < u.Retention+u.Limit {
+					placed, high, others = placed+u.Share, min(high, u.Retention+u.Limit), others+fmt.Sprintf(" %q", u.Name)
+				}
+			}
+			if t.Share > 0 && placed > 1+shareRounding {
 				faults.Add(fault.Fault{
 					Key:     t.Name,
-					Found:   fmt.Sprintf("overlaps %q between %v and %v, where %.6g %% would be placed", u.Name, low, high, 100*(t.Share+u.Share)),
+					Found:   fmt.Sprintf("overlaps%s between %v and %v, where %.6g %% would be placed", others, low, high, 100*placed),
 					Allowed: "at most 100 % of any layer on one subject",
 				})
+				break
 			}
+		}
+	}
+}
+
+// shareRounding is by how much shares that make 100 % may exceed it: some additions of numbers up to 1 err by 1e-16 each.
+const shareRounding = 1e-9
+
+// cessions reports quota shares on the same subject that cede more than all of it.
+func (p Programme) cessions(faults *fault.List) {
+	for i, t := range p.Treaties {
+		ceded, others := t.Cession, ""
+		for _, u := range p.Treaties[:i] {
+			if sameSubject(t, u) && u.Cession > 0 {
+				ceded, others = ceded+u.Cession, others+fmt.Sprintf(" %q", u.Name)
+			}
+		}
+		if t.Kind == QuotaShare && t.Cession > 0 && ceded > 1+shareRounding {
+			faults.Add(fault.Fault{
+				Key:     t.Name + ".cession",
+				Found:   fmt.Sprintf("%.6g %% of one subject is ceded together with%s", 100*ceded, others),
+				Allowed: "at most 100 %, or treaties that come after one another",
+			})
 		}
 	}
 }
