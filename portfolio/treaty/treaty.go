@@ -68,6 +68,15 @@ type Treaty struct {
 	Curve      string   // name of the market curve that prices it
 	Premium    Optional // quoted base premium for 100 % of an excess treaty, money per year; overrides the curve
 	Commission Optional // quota share only: commission as a fraction of ceded premium; overrides the curve
+
+	Panel []Line // who stands behind it; none = nobody fails. What the lines leave of 100 % is taken as free of default
+}
+
+// Line is one reinsurer's part of a treaty.
+type Line struct {
+	Reinsurer  string
+	Share      float64 // fraction of what is placed, 0–1; the lines of a panel come to at most 1
+	Collateral float64 // money held against this line, ≥ 0
 }
 
 // Placed gives the fraction of the contract that is placed: the cession of a quota share, else the share.

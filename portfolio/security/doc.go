@@ -1,0 +1,2 @@
+// Package security says who stands behind the treaties: reinsurers, their probability of default, and the simulated years in which they fail.
+package security
