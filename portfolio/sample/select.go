@@ -65,3 +65,30 @@ func Tail(values []float64, l Level) (valueAtRisk, tailValueAtRisk float64) {
 	sum := Sum(values[k:]) + float64(l.Excess(n)*valueAtRisk)
 	return valueAtRisk, sum / (l.Tail() * float64(n))
 }
+
+// TailFigures are value at risk and tail value at risk at one level, in the unit of the values.
+type TailFigures struct{ VaR, TVaR float64 }
+
+// Tails gives the tail figures at several levels, which must rise, of an unsorted sample, which it reorders; dst is as long as levels. Tail
+// value at risk is worked out for levels[means:] alone, 0 below. It allocates nothing. Each level looks only at the values that the level before it left above itself, so that further levels cost
+// little. The figures are those of Sample.VaR and Sample.TVaR to rounding.
+func Tails(values []float64, levels []Level, means int, dst []TailFigures) {
+	n := len(values)
+	done := 0 // values[:done] are in their places: not above the rest, and what a lower level left above itself stays there
+	for i, l := range levels {
+		k := l.Rank(n)
+		selectRange(values, min(done, k-1), n-1, k-1)
+		dst[i] = TailFigures{VaR: values[k-1]}
+		done = k
+	}
+	// From the top down each level adds what lies between its quantile and the one above.
+	sum, from := 0.0, n
+	for i := len(levels) - 1; i >= means; i-- {
+		k := levels[i].Rank(n)
+		if k < from {
+			sum += Sum(values[k:from])
+			from = k
+		}
+		dst[i].TVaR = (sum + float64(levels[i].Excess(n)*dst[i].VaR)) / (levels[i].Tail() * float64(n))
+	}
+}

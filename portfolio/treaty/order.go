@@ -85,6 +85,15 @@ func (p Programme) SubjectPremium(i int, classes []string, premiums []float64) f
 	return sum
 }
 
+// SubjectFraction gives the fraction of a class's premium on which quota share i takes its share: what the quota shares that inure to it leave, and 0 for
+// a class that it does not cover.
+func (p Programme) SubjectFraction(i int, class string) float64 {
+	if !p.Treaties[i].covers(class) {
+		return 0
+	}
+	return p.keptOf(i, class)
+}
+
 // keptOf gives the fraction of a class's premium that is left after the quota shares that inure to treaty i.
 func (p Programme) keptOf(i int, class string) float64 {
 	kept := 1.0

@@ -17,6 +17,7 @@ func (t Treaty) Validate() error {
 	if t.Name == "" {
 		add("name", "no name", "a name of its own in the programme")
 	}
+	t.validatePanel(add)
 	if t.Kind < QuotaShare || t.Kind > AggregateExcess {
 		faults.Add(fault.Fault{Key: "kind", Found: t.Kind.String(), Allowed: fmt.Sprint(KindNames())})
 		return faults.Err()
