@@ -66,9 +66,12 @@ type Formula struct {
 	Adjustment                                    float64   // for the loss-absorbing capacity of provisions and deferred taxes, money, ≤ 0
 	TypeTwo                                       float64   // capital for type 2 default risk, money
 	Recoverables                                  []float64 // existing recoverables by reinsurer, in the order of the register, money; nil = none
+	Default                                       []float64 // yearly probability of default by reinsurer, 0–1: see Factors.Steps and UnratedProbability
+	Tied                                          []bool    // by reinsurer: 60 % or more of its assets are tied as collateral; nil = none
 }
 
-// NonProportional says when the factor for excess cover applies.
+// NonProportional says when the factor for excess cover applies. Art. 117(3), as read in the text of 14/11/2024, applies it to its segments without a
+// condition: Always. The other ways are more careful.
 type NonProportional uint8
 
 // The ways.
@@ -84,7 +87,7 @@ type FormulaClass struct {
 	Reserves        float64 // net best estimate of claims outstanding, money, ≥ 0
 	LastPremium     float64 // net earned premium of the last twelve months, money; 0 when the company has bound itself not to exceed next year's
 	FuturePremium   float64 // present value of premiums beyond the year, existing and future contracts, net, money, ≥ 0
-	Diversification float64 // DIV of its segment's volume, 0–1; 1 = one region
+	Diversification float64 // DIV of its segment's volume, above 0, at most 1 = one region; the same for all classes of a segment
 }
 
 // Scenario is a gross loss that the company has worked out for one peril, region or kind.
@@ -102,7 +105,8 @@ type ScenarioCorrelation struct {
 	Correlation float64
 }
 
-// FormulaPosition is what a programme changes in the formula.
+// FormulaPosition is what a programme changes in the formula. Lists left nil, but for Premium and Scenario, say nothing: no cover, nothing
+// recoverable.
 type FormulaPosition struct {
 	Premium     []float64   // next year's premium by class, net of the programme's premiums, money
 	ExcessCover []bool      // by class: an event- or risk-excess treaty answers it
@@ -115,18 +119,19 @@ type FormulaPosition struct {
 type FormulaFigures struct {
 	PremiumReserve float64
 	Volume, Sigma  float64   // of premium and reserve risk: money, and fraction of volume
-	Kinds          []float64 // by kind of scenario, in the order of Factors.Patterns and then Factors.ManMade
+	Kinds          []float64 // by kind of scenario, in the order of Factors.Patterns and then Factors.ManMade; overwritten when scratch memory is reused
 	Natural        float64
 	ManMade        float64
 	Catastrophe    float64
 	NonLife        float64
 	TypeOne        float64
 	Default        float64
-	Basic          float64 // basic requirement
+	Basic          float64 // basic requirement, intangible assets included
 	Total          float64 // with operational risk and adjustments
 }
 
-// FormulaSlopes is by how much the whole requirement rises per unit of each input: its gradient, the scenarios' on the alternative that counts.
+// FormulaSlopes is by how much the whole requirement rises per unit of each input: its gradient, the scenarios' on the alternative that counts. See
+// Formula.Slopes for the points where it has a kink.
 type FormulaSlopes struct {
 	Premium     []float64   // by class
 	Reserves    []float64   // by class

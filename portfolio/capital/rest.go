@@ -1,5 +1,18 @@
 package capital
 
+import (
+	"crypto/sha256"
+	"encoding/binary"
+	"fmt"
+	"math"
+	"math/rand/v2"
+	"slices"
+
+	"cedewright/portfolio/fault"
+
+	"gonum.org/v1/gonum/stat/distuv"
+)
+
 // Rest is what else the company stands for beside the book: its other risks. Either a capital figure with a correlation, or the law of a
 // yearly loss that is combined with the book year by year.
 type Rest struct {
@@ -10,6 +23,101 @@ type Rest struct {
 	// A loss distribution: Quantile gives the loss of the rest at a probability within (0, 1), in money, a profit negative. Its years are paired with the
 	// book's gross losses at RankCorrelation (Spearman, by a normal copula).
 	Quantile        func(probability float64) float64 // nil = a capital figure
+	Law             string                            // in words, for display: "lognormal, mean 20m, standard deviation 60m"
 	RankCorrelation float64                           // −1 to 1
 	Seed            uint64
+}
+
+// Validate reports every fault at once.
+func (r *Rest) Validate() error {
+	var faults fault.List
+	if !(r.Capital >= 0) || math.IsInf(r.Capital, 0) {
+		faults.Add(fault.Fault{Key: "capital.rest.capital", Found: fmt.Sprint(r.Capital), Allowed: "money of at least 0"})
+	}
+	for _, f := range []struct {
+		key string
+		x   float64
+	}{{"capital.rest.correlation", r.Correlation}, {"capital.rest.rank_correlation", r.RankCorrelation}} {
+		if !(f.x >= -1 && f.x <= 1) {
+			faults.Add(fault.Fault{Key: f.key, Found: fmt.Sprint(f.x), Allowed: "a correlation from -1 to 1"})
+		}
+	}
+	return faults.Err()
+}
+
+// Combine gives the capital of the company from that of the book: √(k² + 2·c·k·B + B²), B and c the rest's capital and correlation. k may be below 0, as the
+// deviation of a value at risk at a low level may be.
+//
+// It is convex in k, with the second derivative B²·(1 − c²)/K³ ≥ 0, so that a tangent bounds it from below.
+func (r *Rest) Combine(k float64) float64 {
+	return math.Sqrt(max(float64(k*k)+float64(2*r.Correlation*k*r.Capital)+float64(r.Capital*r.Capital), 0))
+}
+
+// Slope gives by how much the company's capital rises per unit of the book's, at k; at the apex, where both are 0, the slope to the right.
+func (r *Rest) Slope(k float64) float64 {
+	all := r.Combine(k)
+	if all == 0 {
+		return 1
+	}
+	return (k + r.Correlation*r.Capital) / all
+}
+
+// Years gives the rest's loss of every year, in money. The values are the law's quantiles at the middles of N equal strata, so that the law is met as closely
+// as N values can; their order pairs them with the gross losses by a normal copula whose Spearman correlation is RankCorrelation: Pearson's
+// parameter is 2·sin(π·ρ/6) (Kruskal 1958). Equal gross losses are ordered at random. At ±1 the pairing is exact. The stream is seeded by (Seed,
+// "rest of the company"), so that no other draw moves it.
+func (r *Rest) Years(grossLosses []float64) []float64 {
+	n := len(grossLosses)
+	sum := sha256.Sum256(binary.LittleEndian.AppendUint64([]byte("rest of the company "), r.Seed))
+	random := rand.New(rand.NewPCG(binary.LittleEndian.Uint64(sum[:8]), binary.LittleEndian.Uint64(sum[8:16])))
+	loading := 2 * math.Sin(math.Pi*r.RankCorrelation/6)
+	own := math.Sqrt(max(1-loading*loading, 0))
+	// Scores of the gross losses, those of equal losses in random order, mixed with noise: their order is that of the rest's losses.
+	mixed := make([]float64, n)
+	for k, y := range byValue(grossLosses, random) {
+		mixed[y] = float64(loading*distuv.UnitNormal.Quantile((float64(k)+0.5)/float64(n))) + float64(own*random.NormFloat64())
+	}
+	years := make([]float64, n)
+	for k, y := range byValue(mixed, random) {
+		years[y] = r.Quantile((float64(k) + 0.5) / float64(n))
+	}
+	return years
+}
+
+// byValue gives the places of values by rising value, equal values in random order.
+func byValue(values []float64, random *rand.Rand) []int {
+	order := random.Perm(len(values))
+	slices.SortStableFunc(order, func(i, j int) int {
+		switch {
+		case values[i] < values[j]:
+			return -1
+		case values[i] > values[j]:
+			return 1
+		}
+		return 0
+	})
+	return order
+}
+
+// RestFamilies lists the families that RestLaw knows.
+func RestFamilies() []string { return []string{"normal", "lognormal"} }
+
+// RestLaw gives the quantiles of a yearly loss of that mean and standard deviation, in money. The mean of a lognormal must be above 0, the standard deviation
+// of either too.
+func RestLaw(family string, mean, deviation float64) (func(probability float64) float64, error) {
+	if !(deviation > 0) || math.IsInf(deviation, 0) || math.IsNaN(mean) || math.IsInf(mean, 0) {
+		return nil, &fault.Fault{Key: "sd", Found: fmt.Sprint(deviation), Allowed: "money above 0"}
+	}
+	switch family {
+	case "normal":
+		return distuv.Normal{Mu: mean, Sigma: deviation}.Quantile, nil
+	case "lognormal":
+		if mean <= 0 {
+			return nil, &fault.Fault{Key: "mean", Found: fmt.Sprint(mean), Allowed: "money above 0, for a lognormal law"}
+		}
+		cv := deviation / mean
+		variance := math.Log1p(cv * cv)
+		return distuv.LogNormal{Mu: math.Log(mean) - variance/2, Sigma: math.Sqrt(variance)}.Quantile, nil
+	}
+	return nil, &fault.Fault{Key: "family", Found: fmt.Sprintf("no family is named %q", family), Allowed: fmt.Sprintf("%q", RestFamilies()), Nearest: fault.Nearest(family, RestFamilies())}
 }
