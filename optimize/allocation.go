@@ -10,18 +10,20 @@ import (
 	"cedewright/portfolio/treaty"
 )
 
-// Allocation says where the required capital of the first standard comes from, by natural allocation: each part is averaged with the weights that the
-// standard gives to the years of the position as a whole, ties shared, so that the parts add up (Tasche 1999; Denault 2001). Value at risk
-// sits on a single year; its weights are spread over the years whose rank is within one standard error of the quantile's and scaled so
-// that the parts add up all the same.
+// Allocation says where the required capital of one standard comes from, by natural allocation. Under a simulated standard each part is averaged with the
+// weights that the standard gives to the years of the position as a whole, ties shared, so that the parts add up (Tasche 1999; Denault 2001). Value
+// at risk sits on a single year; its weights are spread over the years whose rank is within one standard error of the quantile's and scaled so
+// that the parts add up all the same. Under a formula or a covariance the parts follow from its slopes (Euler's theorem).
 type Allocation struct {
 	Standard string
-	Classes  []ClassCapital
-	Perils   []PerilCapital  // losses alone
-	Certain  float64         // expenses less premiums: what the perils' parts lack to the gross capital, money; 0 on basis deviation
-	Treaties []TreatyCapital // in the order of the programme
-	Gross    float64         // required capital with no cover, the sum of the classes' gross parts
-	Net      float64         // with the programme, the sum of the classes' net parts
+	Drives   bool           // the standard drives at this programme
+	Classes  []ClassCapital // none under a covariance, whose charges are not by class
+	Perils   []PerilCapital // losses alone; of a covariance its perils' parts; none under a formula
+	Others   []OtherCapital // what belongs to no class: the rest of the company, other modules, given charges
+	Certain  float64        // simulated standards: expenses less premiums, what the perils' parts lack to the gross capital; 0 on basis deviation
+	Treaties []TreatyCapital
+	Gross    float64 // required capital with no cover: the sum of the gross parts
+	Net      float64 // with the programme: the sum of the net parts
 }
 
 // ClassCapital is one class's part, in money, and what it earns on it.
@@ -30,6 +32,8 @@ type ClassCapital struct {
 	Gross, Net Estimate // part of required capital before and after the programme; a class that hedges the others has a negative one
 	GrossMean  float64  // expected result of a year before the programme
 	NetMean    float64  // after it: less the class's part of the treaties' margins
+	GrossCost  float64  // part of what the owners ask for the risk kept, money per year, before and
+	NetCost    float64  // after the programme; both 0 but for the standard that drives
 }
 
 // Return gives expected result over allocated capital per year; NaN when no capital is allocated.
@@ -46,84 +50,127 @@ type PerilCapital struct {
 	Gross, Net Estimate
 }
 
+// OtherCapital is the part of something that belongs to no class, in money.
+type OtherCapital struct {
+	Name       string
+	Gross, Net float64
+}
+
 // TreatyCapital is the capital that one treaty frees, in money, seen in three ways.
 type TreatyCapital struct {
 	Name       string
 	StandAlone float64  // the treaty alone, against no cover
 	LastIn     float64  // with it, against the programme without it
-	Natural    Estimate // its part of the programme's relief in the years that set the net capital
+	Natural    Estimate // its part of the programme's relief, by the weights or slopes at the net position
+	Cost       float64  // by how much it lowers what the owners ask for the risk kept, by natural allocation, money per year; 0 but for the standard that drives
 }
 
-// parts are the cash flows of a treaty by class: expected recoveries, and recoveries averaged with the capital weights.
-type parts struct{ mean, weighted []float64 }
-
-// Allocate allocates the required capital of a programme under the first standard.
-func (a *Appraiser) Allocate(p treaty.Programme) (Allocation, error) {
+// Allocate allocates the required capital of a programme under every standard, in their order.
+func (a *Appraiser) Allocate(p treaty.Programme) ([]Allocation, error) {
 	w := a.scratch.Get().(*workspace)
 	defer a.scratch.Put(w)
-	items, err := a.items(p, w)
+	net, _, err := a.positionOf(p, w)
 	if err != nil {
-		return Allocation{}, fmt.Errorf("allocate %q: %w", p.Name, err)
+		return nil, fmt.Errorf("allocate %q: %w", p.Name, err)
 	}
-	a.netLosses(items, w)
-	losses := slices.Clone(w.loss)
-	s := a.c.Standards[0]
-	net := s.Amount(slices.Clone(losses), a.meanNet(a.totals(items)))
-	gross := a.gross[0].figure.Value
-	result := Allocation{Standard: s.Name, Gross: gross, Net: net}
-	grossWeights := capitalWeights(s, a.ungained, gross)
-	netWeights := capitalWeights(s, losses, net)
-
-	table := a.c.Book.Table
-	count := len(a.c.Book.Classes)
-	netPart, premiums := make([]Estimate, count), make([]float64, count) // of each class, premiums as margins
-	for c, class := range a.c.Book.Classes {
-		annual := table.Annual(c, -1)
-		certain := class.Premium*class.Expenses - class.Premium
-		mean := sample.Sum(annual) / float64(a.years)
-		row := ClassCapital{Name: class.Name, Gross: part(s, annual, certain, mean, grossWeights), GrossMean: -certain - mean}
-		row.NetMean = row.GrossMean
-		netPart[c] = part(s, annual, certain, mean, netWeights)
-		result.Classes = append(result.Classes, row)
-		result.Certain += certain * weightMean(grossWeights)
-		if s.Basis == capital.Deviation {
-			result.Certain -= certain
+	after := a.requirements(net, w)
+	net = net.own()
+	copy(w.loss, a.ungained)
+	gross := a.position(treaty.Programme{}, nil, a.meanLoss+a.constant, w)
+	before := a.requirements(gross, w)
+	gross = gross.own()
+	flows := a.cashFlows(net, w)
+	others, err := a.otherProgrammes(p, net, w)
+	if err != nil {
+		return nil, fmt.Errorf("allocate %q: %w", p.Name, err)
+	}
+	list := make([]Allocation, len(a.rules))
+	for i, r := range a.rules {
+		k := Allocation{Standard: a.c.Standards[i].Name, Drives: i == a.driving(after), Gross: before[i].amount, Net: after[i].amount}
+		for _, t := range p.Treaties {
+			k.Treaties = append(k.Treaties, TreatyCapital{Name: t.Name})
 		}
-	}
-	for i, name := range table.Perils() {
-		annual := table.Annual(-1, i)
-		mean := sample.Sum(annual) / float64(a.years)
-		result.Perils = append(result.Perils, PerilCapital{name, part(s, annual, 0, mean, grossWeights), part(s, annual, 0, mean, netWeights)})
-	}
-	for _, t := range p.Treaties {
-		row := TreatyCapital{Name: t.Name}
-		if i := slices.IndexFunc(items, func(it item) bool { return it.terms.Name == t.Name }); i >= 0 {
-			row, err = a.allocateTreaty(p, items[i], s, netWeights, net, netPart, premiums, w)
-			if err != nil {
-				return Allocation{}, err
+		switch r := r.(type) {
+		case *simulatedRule:
+			r.allocate(&k, gross, net, before[i], after[i], flows)
+		case *formulaRule:
+			if err := r.allocate(&k, gross, net, flows); err != nil {
+				return nil, fmt.Errorf("allocate %q: %w", p.Name, err)
+			}
+		case *covarianceRule:
+			r.allocate(&k, gross, net)
+		}
+		for j, t := range p.Treaties {
+			if t.Placed() > 0 {
+				k.Treaties[j].StandAlone = before[i].amount - others.alone[j][i].amount
+				k.Treaties[j].LastIn = others.without[j][i].amount - after[i].amount
 			}
 		}
-		result.Treaties = append(result.Treaties, row)
+		if k.Drives {
+			a.allocateCost(&k, gross, net, before, after, flows)
+		}
+		list[i] = k
 	}
-	for c := range result.Classes {
-		result.Classes[c].Net = netPart[c]
-		result.Classes[c].NetMean -= premiums[c]
-	}
-	return result, nil
+	return list, nil
 }
 
-// capitalWeights gives the weights of the years in a required capital, such that the mean of weight times loss is the capital (the amount beyond the mean
-// on basis deviation); all 0 when no capital is required.
-func capitalWeights(s capital.Standard, losses []float64, amount float64) []float64 {
-	if amount == 0 && s.Basis == capital.Result {
-		return make([]float64, len(losses))
+// otherRequirements are what every standard asks of each treaty alone and of the programme without it, by treaty; nil for one that is not placed.
+type otherRequirements struct{ alone, without [][]requirement }
+
+func (a *Appraiser) otherProgrammes(p treaty.Programme, net *position, w *workspace) (otherRequirements, error) {
+	o := otherRequirements{make([][]requirement, len(p.Treaties)), make([][]requirement, len(p.Treaties))}
+	for _, it := range net.items {
+		single := it.terms
+		single.After = nil // nothing inures to a treaty alone
+		for _, c := range []struct {
+			to        *[]requirement
+			programme treaty.Programme
+		}{
+			{&o.alone[it.place], treaty.Programme{Treaties: []treaty.Treaty{single}}},
+			{&o.without[it.place], without(p, it.terms.Name)},
+		} {
+			q, _, err := a.positionOf(c.programme, w)
+			if err != nil {
+				return o, err
+			}
+			*c.to = a.requirements(q, w)
+		}
 	}
-	weights := tailWeights(losses, s.Measure, s.Level)
-	want := amount
-	if s.Basis == capital.Deviation {
+	return o, nil
+}
+
+// yearWeights are the weights of the years in a required capital: the part of a yearly flow is the mean of weight times flow, less deviation times its mean.
+type yearWeights struct {
+	years     []float64
+	deviation float64 // 1 on basis deviation, 0 on basis result, between them for mixed criteria
+}
+
+// weights gives the weights of the years in the requirement of a view: those of its criteria, by their share in it.
+func (r *simulatedRule) weights(v view, setBy int) yearWeights {
+	w := yearWeights{years: make([]float64, len(v.losses))}
+	for i, share := range r.standard.Shares(setBy) {
+		c := r.standard.Criteria[i]
+		held := c.From(v.tails[r.level[i]], v.mean) / c.Ratio
+		if share == 0 || held == 0 && c.Basis == capital.Result {
+			continue
+		}
+		addScaled(w.years, share*c.Ratio, capitalWeights(c, v.losses, held))
+		if c.Basis == capital.Deviation {
+			w.deviation += share * c.Ratio
+		}
+	}
+	return w
+}
+
+// capitalWeights gives the weights of the years in one measure, such that the mean of weight times loss is the measure: held, and the mean of the losses on
+// top on basis deviation.
+func capitalWeights(c capital.Criterion, losses []float64, held float64) []float64 {
+	weights := tailWeights(losses, c.Measure, c.Level)
+	want := held
+	if c.Basis == capital.Deviation {
 		want += sample.Sum(losses) / float64(len(losses))
 	}
-	if got := meanProduct(weights, losses); s.Measure == capital.ValueAtRisk && got != 0 {
+	if got := meanProduct(weights, losses); c.Measure == capital.ValueAtRisk && got != 0 {
 		for y := range weights {
 			weights[y] *= want / got
 		}
@@ -131,111 +178,101 @@ func capitalWeights(s capital.Standard, losses []float64, amount float64) []floa
 	return weights
 }
 
-func weightMean(weights []float64) float64 { return sample.Sum(weights) / float64(len(weights)) }
-
-// part averages a yearly flow and a certain amount with the weights; on basis deviation its mean is taken off. Its standard error is that of a weighted
-// mean, the weights taken as given.
-func part(s capital.Standard, annual []float64, certain, mean float64, weights []float64) Estimate {
-	value := meanProduct(weights, annual)
-	scale := weightMean(weights)
+// part averages a yearly flow with the weights. Its standard error is that of a weighted mean, the weights taken as given.
+func (w yearWeights) part(flow []float64) Estimate {
+	value := meanProduct(w.years, flow)
+	scale := sample.Sum(w.years) / float64(len(w.years))
 	squares := 0.0
 	if scale > 0 {
 		centre := value / scale
-		for y, x := range annual {
-			d := weights[y] * (x - centre)
+		for y, x := range flow {
+			d := w.years[y] * (x - centre)
 			squares += float64(d * d)
 		}
 	}
-	e := Estimate{value + certain*scale, math.Sqrt(squares) / float64(len(annual))}
-	if s.Basis == capital.Deviation {
-		e.Value -= mean + certain
-	}
-	return e
+	n := float64(len(flow))
+	return Estimate{value - w.deviation*sample.Sum(flow)/n, math.Sqrt(squares) / n}
 }
 
-// allocateTreaty gives a treaty's capital and takes its flows off the classes' net parts: recoveries fall on the classes whose rows they pay, premiums,
-// commission and reinstatement premiums on the same classes in proportion to the expected recoveries.
-func (a *Appraiser) allocateTreaty(p treaty.Programme, it item, s capital.Standard, weights []float64, net float64, netPart []Estimate, margins []float64, w *workspace) (TreatyCapital, error) {
-	row := TreatyCapital{Name: it.terms.Name}
-	flow := a.cashFlow(it, w)
-	mean := sample.Sum(flow) / float64(a.years)
-	taken := part(s, flow, 0, mean, weights) // what the treaty adds to required capital: negative = it frees
-	row.Natural = Estimate{-taken.Value, taken.StandardError}
-	for _, alone := range []struct {
-		to        *float64
-		programme treaty.Programme
-	}{
-		{&row.StandAlone, treaty.Programme{Treaties: []treaty.Treaty{standAlone(it.terms)}}},
-		{&row.LastIn, without(p, it.terms.Name)},
-	} {
-		others, err := a.items(alone.programme, w)
-		if err != nil {
-			return row, err
+func (w yearWeights) scaled(c float64) yearWeights {
+	if c != 1 {
+		for y := range w.years {
+			w.years[y] *= c
 		}
-		a.netLosses(others, w)
-		copy(w.sorted, w.loss)
-		*alone.to = s.Amount(w.sorted, a.meanNet(a.totals(others)))
+		w.deviation *= c
 	}
-	row.StandAlone = a.gross[0].figure.Value - row.StandAlone
-	row.LastIn -= net
-
-	shares := a.recoveriesByClass(p, it, weights)
-	expected := sample.Sum(shares.mean)
-	other := taken.Value // of the flows that are no recoveries
-	for c := range netPart {
-		recovered := shares.weighted[c]
-		if s.Basis == capital.Deviation {
-			recovered -= shares.mean[c]
-		}
-		netPart[c].Value -= it.terms.Placed() * recovered
-		other += it.terms.Placed() * recovered
-	}
-	for c := range netPart {
-		share := 1 / float64(len(netPart))
-		if expected > 0 {
-			share = shares.mean[c] / expected
-		}
-		netPart[c].Value += share * other
-		margins[c] += share * mean
-	}
-	return row, nil
+	return w
 }
 
-// standAlone gives a treaty that nothing inures to.
-func standAlone(t treaty.Treaty) treaty.Treaty {
-	t.After = nil
-	return t
-}
-
-// cashFlow gives what a treaty costs in each year, as placed: premiums less commission and recoveries.
-func (a *Appraiser) cashFlow(it item, w *workspace) []float64 {
-	f := a.flow(it, w)
-	placed := it.terms.Placed()
-	premium := placed * it.priced.base
-	out := make([]float64, a.years)
-	for y, r := range f.recovery {
-		out[y] = premium*(1-it.priced.commission) - float64(placed*r)
-		if f.reinstated != nil {
-			out[y] += float64(premium * f.reinstated[y])
+// allocate fills an allocation under a simulated standard. With the rest of the company as a capital figure B, K of the company is homogeneous in K and B, so
+// the book's part is the slope by K times K and the rest's is what remains; with a law of the rest its part is averaged like any other.
+func (r *simulatedRule) allocate(k *Allocation, gross, net *position, before, after requirement, flows *bookFlows) {
+	a := r.a
+	grossWeights, netWeights := r.weights(gross.company, before.setBy), r.weights(net.company, after.setBy)
+	if rest := a.c.Rest; rest != nil {
+		other := OtherCapital{Name: "rest of the company"}
+		if rest.Quantile == nil {
+			grossWeights, netWeights = grossWeights.scaled(rest.Slope(before.alone)), netWeights.scaled(rest.Slope(after.alone))
+			other.Gross, other.Net = before.amount-rest.Slope(before.alone)*before.alone, after.amount-rest.Slope(after.alone)*after.alone
+		} else {
+			other.Gross, other.Net = grossWeights.part(a.rest).Value, netWeights.part(a.rest).Value
 		}
+		k.Others = append(k.Others, other)
 	}
-	return out
-}
-
-// recoveriesByClass shares a treaty's recoveries at 100 % back to the classes whose rows they pay.
-func (a *Appraiser) recoveriesByClass(p treaty.Programme, it item, weights []float64) parts {
+	for c, class := range a.c.Book.Classes {
+		k.Classes = append(k.Classes, ClassCapital{
+			Name: class.Name, Gross: grossWeights.part(flows.gross[c]), Net: netWeights.part(flows.net[c]),
+			GrossMean: flows.grossMean(c), NetMean: flows.netMean(c),
+		})
+	}
 	table := a.c.Book.Table
-	i := slices.IndexFunc(p.Treaties, func(t treaty.Treaty) bool { return t.Name == it.terms.Name })
-	rows := rowRecoveries(table, it.terms, newSelection(table, it.terms.Classes, it.terms.Perils), a.lossesNetOf(p, i))
-	columns := table.Columns()
-	shares := parts{make([]float64, len(a.c.Book.Classes)), make([]float64, len(a.c.Book.Classes))}
-	for y := range table.Years() {
-		for row := columns.Offset[y]; row < columns.Offset[y+1]; row++ {
-			if r := rows[row]; r > 0 {
-				shares.mean[columns.Class[row]] += r / float64(a.years)
-				shares.weighted[columns.Class[row]] += float64(weights[y]*r) / float64(a.years)
-			}
+	for i, name := range table.Perils() {
+		annual := table.Annual(-1, i)
+		k.Perils = append(k.Perils, PerilCapital{name, grossWeights.part(annual), netWeights.part(annual)})
+	}
+	k.Certain = a.constant * (sample.Sum(grossWeights.years)/float64(a.years) - grossWeights.deviation)
+	for _, t := range flows.treaties {
+		taken := netWeights.part(t.cost) // what the treaty adds to required capital: negative = it frees
+		k.Treaties[t.place].Natural = Estimate{-taken.Value, taken.StandardError}
+	}
+}
+
+// allocateCost fills the parts of what the owners ask for the risk kept. At a flat rate they are the rate times the parts of required capital. With a
+// price of risk of their own a year's loss counts with the weight that the distortion gives it beyond its own; in years beyond the assets, what the
+// company can lose falls on the classes in proportion to their loss (equal priority: Phillips, Cummins and Allen 1998).
+func (a *Appraiser) allocateCost(k *Allocation, gross, net *position, before, after []requirement, flows *bookFlows) {
+	if a.c.Owners == nil {
+		for c := range k.Classes {
+			k.Classes[c].GrossCost, k.Classes[c].NetCost = a.c.CostOfCapital*k.Classes[c].Gross.Value, a.c.CostOfCapital*k.Classes[c].Net.Value
+		}
+		for j := range k.Treaties {
+			k.Treaties[j].Cost = a.c.CostOfCapital * k.Treaties[j].Natural.Value
+		}
+		return
+	}
+	grossWeights := a.ownerWeights(gross, before, a.driving(before))
+	netWeights := a.ownerWeights(net, after, a.driving(after))
+	for c := range k.Classes {
+		k.Classes[c].GrossCost, k.Classes[c].NetCost = meanProduct(grossWeights, flows.gross[c]), meanProduct(netWeights, flows.net[c])
+	}
+	for _, t := range flows.treaties {
+		k.Treaties[t.place].Cost = -meanProduct(netWeights, t.cost)
+	}
+}
+
+// ownerWeights gives weights of the years such that the mean of weight times loss is what the owners ask for the risk kept.
+func (a *Appraiser) ownerWeights(p *position, all []requirement, driver int) []float64 {
+	assets := a.assets(p, all, driver)
+	z := slices.Clone(p.company.losses)
+	for y, x := range z {
+		z[y] = min(x, assets)
+	}
+	weights := sample.AllocationWeights(z, a.c.Owners.At)
+	for y, x := range p.company.losses {
+		weights[y]--
+		if x > assets && x != 0 {
+			weights[y] *= assets / x
 		}
 	}
-	return shares
+	return weights
 }

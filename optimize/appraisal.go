@@ -13,10 +13,24 @@ type Estimate struct {
 
 // CapitalFigure is required capital under one standard, in money. Relief = Gross − Net.
 type CapitalFigure struct {
-	Standard string   // name in the study
-	Gross    Estimate // with no reinsurance
-	Net      Estimate // with the programme
-	Relief   Estimate // its error is that of the difference on common years
+	Standard string        // name in the study
+	Gross    Estimate      // with no reinsurance
+	Net      Estimate      // with the programme
+	Relief   Estimate      // its error is that of the difference on common years
+	Alone    *Alone        // of the book alone, before diversification with the rest of the company; nil without a rest
+	Binding  bool          // no standard asks more of the net position
+	Parts    []CapitalPart // what the requirement is made of; none for a single criterion; detail only
+}
+
+// Alone is required capital before diversification with the rest of the company, in money.
+type Alone struct{ Gross, Net, Relief Estimate }
+
+// CapitalPart is a piece of a requirement, such as a module, a charge or a criterion, in money. Pieces do not add up: the standard says how they are combined.
+type CapitalPart struct {
+	Name   string
+	Gross  float64 // with no reinsurance
+	Amount float64 // with the programme
+	Sets   bool    // the criterion that sets the requirement of the net position
 }
 
 // NetResult describes the net result of a year, in money; a loss is negative.
@@ -38,7 +52,8 @@ type TreatyFigure struct {
 	CommissionRate        float64  // fraction of ceded premium
 	ExpectedRecovery      Estimate
 	Margin                Estimate // premium + reinstatement premium − commission − recovery
-	Relief                Estimate // last-in: capital without this treaty − with the whole programme, first standard, money
+	Relief                Estimate // last-in: driving capital without this treaty − with the whole programme, money
+	ExpectedUnpaid        Estimate // of recoveries, by reinsurers that fail
 	AttachmentProbability Estimate // per year; 0 for a quota share
 	ExhaustionProbability Estimate
 	PricedBy              string          // "quoted", "curve NAME", "commission", "minimum rate on line of curve NAME"
@@ -55,10 +70,12 @@ type Appraisal struct {
 	ReinstatementPremium Estimate
 	Commission           Estimate
 	CededMargin          Estimate
-	Capital              []CapitalFigure // in the order of the standards; the first drives the search
-	CapitalCost          Estimate
-	TotalCost            Estimate
-	Rent                 Estimate // per year; no value when relief ≤ 0: RentDefined is false
+	ExpectedUnpaid       Estimate        // of recoveries, by reinsurers that fail; not part of the margin, but of the total cost
+	Capital              []CapitalFigure // in the order of the standards
+	Driving              CapitalFigure   // what drives: the standard of those that drive which asks the most, before and after the programme
+	CapitalCost          Estimate        // what the owners ask for the risk kept
+	TotalCost            Estimate        // ceded margin + expected unpaid recoveries + capital cost
+	Rent                 Estimate        // per year; no value when relief ≤ 0: RentDefined is false
 	RentDefined          bool
 	OwnFundsRatio        []Estimate // own funds / net required capital, per standard; empty when own funds are not given
 	NetResult            NetResult

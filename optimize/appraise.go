@@ -3,6 +3,7 @@ package optimize
 import (
 	"fmt"
 	"math"
+	"slices"
 
 	"cedewright/portfolio/sample"
 	"cedewright/portfolio/treaty"
@@ -35,13 +36,16 @@ func (a *Appraiser) Appraise(p treaty.Programme, detail bool) (Appraisal, error)
 	}
 	result := Appraisal{Programme: p, Treaties: make([]TreatyFigure, len(p.Treaties))}
 	totals := a.totals(items)
-	a.netLosses(items, w)
+	totals.unpaid = a.netLosses(items, w)
 	result.CededPremium.Value = totals.premium
 	result.ExpectedRecoveries.Value = totals.recovery
 	result.ReinstatementPremium.Value = totals.reinstatement
 	result.Commission.Value = totals.commission
 	result.CededMargin.Value = totals.margin()
-	a.measure(&result, totals, w)
+	result.ExpectedUnpaid.Value = totals.unpaid
+	pos := a.position(p, items, a.meanNet(totals), w)
+	all := a.requirements(pos, w)
+	a.measure(&result, pos, all, w)
 	for _, it := range items {
 		if it.priced.noTaker {
 			result.NoTaker = append(result.NoTaker, it.terms.Name)
@@ -56,7 +60,7 @@ func (a *Appraiser) Appraise(p treaty.Programme, detail bool) (Appraisal, error)
 		}
 	}
 	if detail {
-		if err := a.detail(&result, items, totals, w); err != nil {
+		if err := a.detail(&result, pos.own(), all, w); err != nil {
 			return Appraisal{}, fmt.Errorf("appraise %q: %w", p.Name, err)
 		}
 	}
@@ -64,7 +68,7 @@ func (a *Appraiser) Appraise(p treaty.Programme, detail bool) (Appraisal, error)
 }
 
 // totals are the expected money flows of a programme, per year, as placed.
-type totals struct{ premium, recovery, reinstatement, commission float64 }
+type totals struct{ premium, recovery, reinstatement, commission, unpaid float64 }
 
 func (t totals) margin() float64 { return t.premium + t.reinstatement - t.commission - t.recovery }
 
@@ -81,9 +85,14 @@ func (a *Appraiser) totals(items []item) totals {
 	return sum
 }
 
-// netLosses fills w.loss with −U of each year: the loss after everything that the programme pays and costs.
-func (a *Appraiser) netLosses(items []item, w *workspace) {
+// netLosses fills w.loss with −U of each year, the loss after everything that the programme pays and costs, and gives what reinsurers are expected to leave
+// unpaid, money per year; it notes each treaty's part.
+func (a *Appraiser) netLosses(items []item, w *workspace) float64 {
+	unpaid := 0.0
 	certain := 0.0
+	for k := range w.slots {
+		w.slots[k].clear()
+	}
 	for _, it := range items {
 		premium := float64(it.terms.Placed() * it.priced.base)
 		certain += premium - float64(premium*it.priced.commission)
@@ -91,60 +100,84 @@ func (a *Appraiser) netLosses(items []item, w *workspace) {
 	for y, x := range a.ungained {
 		w.loss[y] = x + certain
 	}
-	for _, it := range items {
+	for k, it := range items {
 		placed := it.terms.Placed()
 		if it.terms.Kind == treaty.QuotaShare {
 			for y, x := range it.subject.annual {
 				w.loss[y] -= float64(placed * x)
 			}
+			items[k].unpaid = a.unpaid(it.terms, it.subject.annual, w.loss) / float64(a.years)
+			unpaid += items[k].unpaid
 			continue
 		}
 		premium := float64(placed * it.priced.base)
 		w.recover(it.terms, it.subject)
-		for _, y := range w.touched {
-			r := w.annual[y]
-			w.loss[y] += float64(premium*it.terms.Reinstated(r)) - float64(placed*r)
+		if it.slot >= 0 {
+			w.flowsInto(&w.slots[it.slot], it.terms, premium)
+		} else {
+			for _, y := range w.touched {
+				r := w.annual[y]
+				w.loss[y] += float64(premium*it.terms.Reinstated(r)) - float64(placed*r)
+			}
 		}
+		items[k].unpaid = a.unpaid(it.terms, w.annual, w.loss) / float64(a.years)
+		unpaid += items[k].unpaid
 		w.reset()
 	}
+	return unpaid
 }
 
 // meanNet is the mean of −U, from the parts.
-func (a *Appraiser) meanNet(t totals) float64 { return a.meanLoss + a.constant + t.margin() }
+func (a *Appraiser) meanNet(t totals) float64 { return a.meanLoss + a.constant + t.margin() + t.unpaid }
 
-// measure fills capital, its cost, rent and the net result from w.loss.
-func (a *Appraiser) measure(result *Appraisal, t totals, w *workspace) {
-	mean := a.meanNet(t)
-	copy(w.sorted, w.loss)
-	tenth, _ := sample.Tail(w.sorted, oneIn10)
-	rare, _ := sample.Tail(w.sorted, oneIn200)
-	result.NetResult.Mean.Value = -mean
-	result.NetResult.OneIn10.Value = -tenth
-	result.NetResult.OneIn200.Value = -rare
-	result.NetResult.StandardDeviation = standardDeviation(w.loss, mean)
-	result.Capital = make([]CapitalFigure, len(a.c.Standards))
-	for i, s := range a.c.Standards {
-		net := s.Amount(w.sorted, mean)
+// measure fills capital, its cost, rent and the net result.
+func (a *Appraiser) measure(result *Appraisal, p *position, all []requirement, w *workspace) {
+	result.NetResult.Mean.Value = -p.mean
+	result.NetResult.OneIn10.Value = -p.tails[slices.Index(a.levels, oneIn10)].VaR
+	result.NetResult.OneIn200.Value = -p.tails[slices.Index(a.levels, oneIn200)].VaR
+	result.NetResult.StandardDeviation = standardDeviation(p.losses, p.mean)
+	result.Capital = make([]CapitalFigure, len(a.rules))
+	binding := 0
+	for i, q := range all {
 		gross := a.gross[i].figure.Value
-		result.Capital[i] = CapitalFigure{
-			Standard: s.Name,
-			Gross:    Estimate{Value: gross},
-			Net:      Estimate{Value: net},
-			Relief:   Estimate{Value: gross - net},
+		figure := CapitalFigure{Standard: a.c.Standards[i].Name, Gross: Estimate{Value: gross}, Net: Estimate{Value: q.amount}, Relief: Estimate{Value: gross - q.amount}}
+		if a.c.Rest != nil && a.c.Standards[i].Simulated() {
+			before := a.gross[i].alone.Value
+			figure.Alone = &Alone{Estimate{Value: before}, Estimate{Value: q.alone}, Estimate{Value: before - q.alone}}
+		}
+		result.Capital[i] = figure
+		if q.amount > all[binding].amount {
+			binding = i
 		}
 		if a.c.OwnFunds > 0 {
 			ratio := math.Inf(1)
-			if net > 0 {
-				ratio = a.c.OwnFunds / net
+			if q.amount > 0 {
+				ratio = a.c.OwnFunds / q.amount
 			}
 			result.OwnFundsRatio = append(result.OwnFundsRatio, Estimate{Value: ratio})
 		}
 	}
-	result.CapitalCost.Value = a.c.CostOfCapital * result.Capital[0].Net.Value
-	result.TotalCost.Value = result.CededMargin.Value + result.CapitalCost.Value
-	if relief := result.Capital[0].Relief.Value; relief > 0 {
+	result.Capital[binding].Binding = true
+	driver := a.driving(all)
+	result.Driving = result.Capital[driver]
+	result.Driving.Gross.Value = a.gross[a.grossDriver()].figure.Value
+	result.Driving.Relief.Value = result.Driving.Gross.Value - result.Driving.Net.Value
+	result.CapitalCost.Value = a.capitalCost(p, all, driver, w)
+	result.TotalCost.Value = result.CededMargin.Value + result.ExpectedUnpaid.Value + result.CapitalCost.Value
+	if relief := result.Driving.Relief.Value; relief > 0 {
 		result.Rent.Value, result.RentDefined = result.CededMargin.Value/relief, true
 	}
+}
+
+// grossDriver gives, of the standards that drive, the place of the one that asks the most without cover.
+func (a *Appraiser) grossDriver() int {
+	worst := a.c.Drivers()[0]
+	for _, i := range a.c.Drivers()[1:] {
+		if a.gross[i].figure.Value > a.gross[worst].figure.Value {
+			worst = i
+		}
+	}
+	return worst
 }
 
 // standardDeviation has divisor N − 1; 0 for a single year.
@@ -171,6 +204,7 @@ func (it item) figure() TreatyFigure {
 		Commission:            premium * k.commission,
 		CommissionRate:        k.commission,
 		ExpectedRecovery:      Estimate{Value: placed * k.recovery},
+		ExpectedUnpaid:        Estimate{Value: it.unpaid},
 		AttachmentProbability: Estimate{Value: k.attachment},
 		ExhaustionProbability: Estimate{Value: k.exhaustion},
 		PricedBy:              k.by,

@@ -1,6 +1,7 @@
 package optimize
 
 import (
+	"cmp"
 	"encoding/binary"
 	"fmt"
 	"math"
@@ -10,6 +11,7 @@ import (
 	"cedewright/market"
 	"cedewright/portfolio/fault"
 	"cedewright/portfolio/sample"
+	"cedewright/portfolio/security"
 	"cedewright/portfolio/treaty"
 )
 
@@ -22,15 +24,28 @@ const pricedBudget = 1 << 20
 // Appraiser appraises programmes of one case. It remembers what programmes have in common: the subject of a treaty, and price and
 // expected recovery of a layer. It is safe for concurrent use; what it remembers never changes a figure.
 type Appraiser struct {
-	c        Case
-	years    int
-	tariffs  map[string]*market.Tariff
-	premiums []float64 // by class
-	ungained []float64 // −U of each year with no cover: gross loss + expenses − premium
-	constant float64   // expenses − premium, the part of −U that is certain
-	meanLoss float64   // mean annual gross loss
-	gross    []grossCapital
-	scratch  sync.Pool // of *workspace
+	c           Case
+	years       int
+	tariffs     map[string]*market.Tariff
+	rules       []rule         // by standard
+	formulas    []*formulaRule // those of rules that are formulas
+	covariances []*covarianceRule
+	slots       []*perilYears  // perils that covariances take alone, each once
+	levels      []sample.Level // at which the result is measured, rising
+	means       int            // place of the lowest level at which a tail value at risk is asked
+	premiums    []float64      // by class
+	ungained    []float64      // −U of each year with no cover: gross loss + expenses − premium
+	constant    float64        // expenses − premium, the part of −U that is certain
+	meanLoss    float64        // mean annual gross loss
+	gross       []grossCapital
+	scratch     sync.Pool // of *workspace
+
+	reinsurer  map[string]int     // place in the register
+	failures   *security.Failures // years in which reinsurers fail; nil without a register
+	rest       []float64          // yearly loss of the rest of the company; nil when no law is given for it
+	restMean   float64
+	restOrder  []int32   // years by rising loss of the rest
+	ownerSteps []float64 // g((k+1)/N) − g(k/N) of the owners' price of risk; nil for a flat rate
 
 	mu          sync.Mutex
 	subjects    map[string]*subject
@@ -41,8 +56,11 @@ type Appraiser struct {
 
 // grossCapital is required capital with no cover under one standard.
 type grossCapital struct {
-	figure    Estimate
-	influence []float64
+	figure         Estimate // of the company
+	influence      []float64
+	alone          Estimate // of the book before diversification
+	aloneInfluence []float64
+	parts          []CapitalPart
 }
 
 // NewAppraiser prepares a case. It fails, with every fault at once, when the case is not valid.
@@ -76,17 +94,72 @@ func NewAppraiser(c Case) (*Appraiser, error) {
 	for y := range a.ungained {
 		a.ungained[y] += a.constant
 	}
-	a.scratch.New = func() any { return newWorkspace(a.years) }
-	w := newWorkspace(a.years)
-	for _, s := range c.Standards {
-		copy(w.sorted, a.ungained)
-		influence := s.Influence(a.ungained, nil)
-		a.gross = append(a.gross, grossCapital{
-			figure:    Estimate{s.Amount(w.sorted, a.meanLoss+a.constant), sample.InfluenceError(influence)},
-			influence: influence,
-		})
+	if err := a.prepareStandards(); err != nil {
+		return nil, err
 	}
 	return a, nil
+}
+
+// prepareStandards makes the rules and measures the position without cover.
+func (a *Appraiser) prepareStandards() error {
+	a.prepareSecurity()
+	a.levels, a.means = collectLevels(a.c.Standards)
+	for _, s := range a.c.Standards {
+		if s.Covariance != nil {
+			for _, name := range s.Covariance.Perils {
+				if a.slotNamed(name) < 0 {
+					a.slots = append(a.slots, a.perilYears(name))
+				}
+			}
+		}
+	}
+	if a.c.Rest != nil && a.c.Rest.Quantile != nil {
+		gross := make([]float64, a.years)
+		for y, x := range a.ungained {
+			gross[y] = x - a.constant
+		}
+		a.rest = a.c.Rest.Years(gross)
+		a.restMean = sample.Sum(a.rest) / float64(a.years)
+		a.restOrder = make([]int32, a.years)
+		for y := range a.restOrder {
+			a.restOrder[y] = int32(y)
+		}
+		slices.SortFunc(a.restOrder, func(i, j int32) int { return cmp.Compare(a.rest[i], a.rest[j]) })
+	}
+	if g := a.c.Owners; g != nil {
+		a.ownerSteps = make([]float64, a.years)
+		for k := range a.ownerSteps {
+			a.ownerSteps[k] = g.At(float64(k+1)/float64(a.years)) - g.At(float64(k)/float64(a.years))
+		}
+	}
+	a.scratch.New = func() any { return a.newWorkspace() }
+	w := a.newWorkspace()
+	for _, s := range a.c.Standards {
+		switch {
+		case s.Formula != nil:
+			r, err := a.newFormulaRule(s.Formula, len(a.formulas))
+			if err != nil {
+				return err
+			}
+			a.formulas = append(a.formulas, r)
+			a.rules = append(a.rules, r)
+		case s.Covariance != nil:
+			r := a.newCovarianceRule(s.Covariance, len(a.covariances))
+			a.covariances = append(a.covariances, r)
+			a.rules = append(a.rules, r)
+		default:
+			a.rules = append(a.rules, a.newSimulatedRule(s))
+		}
+	}
+	copy(w.loss, a.ungained)
+	p := a.position(treaty.Programme{}, nil, a.meanLoss+a.constant, w)
+	for i, q := range a.requirements(p, w) {
+		influence := a.rules[i].moves(p, q, nil).years
+		g := grossCapital{figure: Estimate{q.amount, sample.InfluenceError(influence)}, influence: influence, parts: a.rules[i].parts(p, w)}
+		g.alone, g.aloneInfluence = a.aloneFigure(i, p, q, nil)
+		a.gross = append(a.gross, g)
+	}
+	return nil
 }
 
 // Case gives the case that is appraised.
@@ -102,10 +175,27 @@ type workspace struct {
 	hit      []int32   // events in which event is not zero
 	recovery []float64 // positive annual recoveries, to be sorted
 	key      []byte
+
+	tails, companyTails []sample.TailFigures // at Appraiser.levels
+	company             []float64            // −U of the whole company by year; nil unless it is known year by year
+	amounts             []float64            // of criteria
+	formulas            []*formulaWork
+
+	slots []perilSlot // of Appraiser.slots
+	few   []float64   // candidates for a quantile
 }
 
-func newWorkspace(years int) *workspace {
-	return &workspace{loss: make([]float64, years), sorted: make([]float64, years), annual: make([]float64, years)}
+func (a *Appraiser) newWorkspace() *workspace {
+	n := a.years
+	w := &workspace{loss: make([]float64, n), sorted: make([]float64, n), annual: make([]float64, n)}
+	for _, peril := range a.slots {
+		w.slots = append(w.slots, perilSlot{peril: peril, offset: make([]float64, n)})
+	}
+	w.tails, w.companyTails = make([]sample.TailFigures, len(a.levels)), make([]sample.TailFigures, len(a.levels))
+	if a.rest != nil {
+		w.company = make([]float64, n)
+	}
+	return w
 }
 
 // priced is what a layer costs and pays on average, for 100 % of the treaty.
@@ -117,8 +207,9 @@ type priced struct {
 	commission float64 // quota share: fraction of ceded premium
 	attachment float64 // probability per year
 	exhaustion float64
-	noTaker    bool // the market has no capacity for it
-	modelled   bool // base premium or commission follows the curve, so it carries simulation error
+	noTaker    bool        // the market has no capacity for it
+	modelled   bool        // base premium or commission follows the curve, so it carries simulation error
+	scenarios  [][]float64 // by formula: recovery in each year of its scenarios
 }
 
 // item is one treaty of a programme, ready to be applied.
@@ -126,12 +217,18 @@ type item struct {
 	terms   treaty.Treaty
 	subject *subject
 	priced  *priced
+	place   int     // in the programme
+	slot    int     // of the peril that it alone answers (see slotOf), or −1
+	unpaid  float64 // money per year, as placed, that its reinsurers are expected to leave unpaid
 }
 
 // items resolves the placed treaties of a programme, in inuring order.
 func (a *Appraiser) items(p treaty.Programme, w *workspace) ([]item, error) {
 	order, err := p.Order()
 	if err != nil {
+		return nil, err
+	}
+	if err := a.checkPanels(p); err != nil {
 		return nil, err
 	}
 	items := make([]item, 0, len(order))
@@ -145,7 +242,7 @@ func (a *Appraiser) items(p treaty.Programme, w *workspace) ([]item, error) {
 		if err != nil {
 			return nil, err
 		}
-		items = append(items, item{t, s, known})
+		items = append(items, item{terms: t, subject: s, priced: known, place: i, slot: a.slotOf(p, i)})
 	}
 	return items, nil
 }
@@ -232,6 +329,13 @@ func (a *Appraiser) price(p treaty.Programme, i int, s *subject, w *workspace) (
 	}
 	if err != nil {
 		return nil, err
+	}
+	for _, r := range a.formulas {
+		paid, err := r.scenarioRecoveries(p, i)
+		if err != nil {
+			return nil, err
+		}
+		fresh.scenarios = append(fresh.scenarios, paid)
 	}
 	a.mu.Lock()
 	if len(a.priced) >= pricedBudget {

@@ -131,9 +131,7 @@ func (a *archive) appraiseOne(p plan) (r record, err error) {
 	if err != nil {
 		return record{}, err
 	}
-	r = record{plan: p, margin: result.CededMargin.Value, cost: result.TotalCost.Value, violation: a.coder.space.violation(result)}
-	if len(result.Capital) > 0 {
-		r.relief = result.Capital[0].Relief.Value
-	}
-	return r, nil
+	return record{
+		plan: p, margin: result.CededMargin.Value, relief: result.Driving.Relief.Value, cost: result.TotalCost.Value, violation: a.coder.space.violation(result),
+	}, nil
 }

@@ -6,12 +6,12 @@ import (
 	"slices"
 
 	"cedewright/market"
-	"cedewright/portfolio/capital"
 	"cedewright/portfolio/treaty"
 )
 
 // Bound is a total cost below which no programme can come on the loaded years.
 type Bound struct {
+	Known     bool    // false: nothing is known under what drives the search
 	TotalCost float64 // money per year
 	Certified bool    // it holds for every contract whatever, not for ordinary layers on the whole account alone
 	Reason    string  // why it is certified, or which condition fails
@@ -20,26 +20,81 @@ type Bound struct {
 // ThinLayerBound gives the total cost of the best conceivable contract on the whole account, from thin layers of the annual gross loss X: each is ceded or
 // kept, whichever is cheaper, ∫ min(g(S)/(1−b) − S, r·(h(S) − S)) dx on basis deviation and ∫ min((1+r)·g(S)/(1−b) − S, r·h(S)) dx less r times
 // the premiums held on basis result, with S the survival function of X, h the capital measure's distortion, r the cost of capital, and
-// g/(1−b) the lowest of the curves at hand.
+// g/(1−b) the lowest of the curves at hand. A mix of criteria has the mix of their distortions; of criteria or standards of which the worst counts,
+// each gives a bound, and the highest is taken.
 //
 // For tail value at risk h is concave, and so is the integrand's minimum m; then I_m(X) ≤ I_m(R) + I_m(X − R) for every recovery R ≥ 0, so no contract
 // priced at ρ_g or above, nor any sum of such contracts, costs less: the bound is certified. For value at risk it is the optimum of contracts that rise
 // with the annual loss, and some contrived contract may cost less: it is not certified. It speaks of the loaded years, not of the law behind them.
+//
+// Of the rest of the company, a law joins X year by year, and a capital figure leaves the whole requirement convex in the book's own, so that every
+// tangent bounds it from below. Recoveries that reinsurers leave unpaid only add to the cost.
 func (a *Appraiser) ThinLayerBound(space Space) Bound {
-	curves, obstacle := a.boundCurves(space)
-	s := a.c.Standards[0]
-	level, tail := s.Level, s.Level.Tail()
-	n := a.years
-	rank := level.Rank(n)
-	h := func(k int) float64 { // at the survival probability k/n
-		if s.Measure == capital.TailValueAtRisk {
-			return min(float64(k)/float64(n)/tail, 1)
-		}
-		if k > n-rank { // the quantile is exceeded by at most n − rank years
-			return 1
-		}
-		return 0
+	if a.c.Owners != nil {
+		return Bound{Reason: "no bound is known when the owners price the risk they keep by a distortion"}
 	}
+	curves, obstacle := a.boundCurves(space)
+	best := Bound{Reason: "no bound is known under a formula or a covariance of charges"}
+	for _, i := range a.c.Drivers() {
+		r, ok := a.rules[i].(*simulatedRule)
+		if !ok {
+			continue
+		}
+		for _, mix := range mixes(r.standard) {
+			b := a.mixBound(mix, curves)
+			if tail := mix.tailOnly(); !tail {
+				b.Reason = "a contract that pays nothing in the very worst years could beat every sum of layers under value at risk"
+			} else if obstacle != "" {
+				b.Reason = obstacle
+			} else {
+				b.Certified, b.Reason = true, "no contract priced at the curves or above can come"
+			}
+			if !best.Known || b.Certified && !best.Certified || b.Certified == best.Certified && b.TotalCost > best.TotalCost {
+				best = b
+			}
+		}
+	}
+	return best
+}
+
+// mixBound gives the bound under one mix of criteria.
+func (a *Appraiser) mixBound(mix criteriaMix, curves []market.Curve) Bound {
+	losses := make([]float64, a.years) // X, with the rest of the company above its best year
+	constant := a.constant
+	lowest := 0.0
+	if a.rest != nil {
+		lowest = slices.Min(a.rest)
+		constant += lowest
+	}
+	for y, x := range a.ungained {
+		losses[y] = x - a.constant
+		if a.rest != nil {
+			losses[y] += a.rest[y] - lowest
+		}
+	}
+	slices.Sort(losses)
+	slices.Reverse(losses)
+	rest := a.c.Rest
+	if rest == nil || rest.Quantile != nil {
+		return Bound{Known: true, TotalCost: a.thinLayers(mix, curves, losses, constant, a.c.CostOfCapital)}
+	}
+	bound := Bound{Known: true, TotalCost: math.Inf(-1)}
+	const tangents = 16 // each is a bound; a few find nearly the best
+	most := mix.of(losses, constant)
+	for i := range tangents + 1 {
+		at := most * float64(i) / tangents
+		r := a.c.CostOfCapital * rest.Slope(at)
+		if r < 0 {
+			continue // the requirement rises with the book's own above here alone
+		}
+		bound.TotalCost = max(bound.TotalCost, a.thinLayers(mix, curves, losses, constant, r)+a.c.CostOfCapital*rest.Combine(at)-r*at)
+	}
+	return bound
+}
+
+// thinLayers sums the cheaper of ceding and keeping over the layers between falling annual losses; constant is the certain part of −U, r the cost of capital.
+func (a *Appraiser) thinLayers(mix criteriaMix, curves []market.Curve, losses []float64, constant, r float64) float64 {
+	n := len(losses)
 	price := func(p float64) float64 {
 		least := math.Inf(1)
 		for _, c := range curves {
@@ -47,14 +102,9 @@ func (a *Appraiser) ThinLayerBound(space Space) Bound {
 		}
 		return least
 	}
-	losses := make([]float64, n)
-	for y, x := range a.ungained {
-		losses[y] = x - a.constant
-	}
-	slices.Sort(losses)
-	slices.Reverse(losses)
-	r := a.c.CostOfCapital
-	sum := 0.0
+	h := mix.distortion(n)
+	result, deviation := mix.bases()
+	sum := r * result * constant
 	for k := 1; k <= n; k++ {
 		step := losses[k-1]
 		if k < n {
@@ -64,25 +114,9 @@ func (a *Appraiser) ThinLayerBound(space Space) Bound {
 			continue
 		}
 		p := float64(k) / float64(n)
-		cede, keep := price(p)-p, r*(h(k)-p)
-		if s.Basis == capital.Result {
-			cede, keep = (1+r)*price(p)-p, r*h(k)
-		}
-		sum += float64(step * min(cede, keep))
+		sum += float64(step * min((1+r*result)*price(p)-p, r*(h(k)-deviation*p)))
 	}
-	if s.Basis == capital.Result {
-		sum += r * a.constant
-	}
-	b := Bound{TotalCost: sum}
-	switch {
-	case s.Measure != capital.TailValueAtRisk:
-		b.Reason = "a contract that pays nothing in the very worst years could beat every sum of layers under value at risk"
-	case obstacle != "":
-		b.Reason = obstacle
-	default:
-		b.Certified, b.Reason = true, "no contract priced at the curves or above can come"
-	}
-	return b
+	return sum
 }
 
 // boundCurves gives the curves that treaties of the space can be priced by, and what keeps the bound from being certified, if anything.

@@ -53,15 +53,15 @@ func TestOracleThinLayerBound(t *testing.T) {
 	}
 	checked := 0
 	for name, want := range o.Expected.Variants {
-		s := capital.Standard{Name: "s", Measure: capital.TailValueAtRisk, Level: mustLevel("99%"), Basis: capital.Deviation}
+		s := capital.Single("s", capital.TailValueAtRisk, mustLevel("99%"), capital.Deviation, "")
 		if strings.HasPrefix(name, "var") {
-			s.Measure, s.Level = capital.ValueAtRisk, mustLevel("99.5%")
+			s.Criteria[0].Measure, s.Criteria[0].Level = capital.ValueAtRisk, mustLevel("99.5%")
 		}
 		switch {
 		case strings.Contains(name, "K3"):
 			continue // a basis that no standard here has
 		case strings.Contains(name, "K2"):
-			s.Basis = capital.Result
+			s.Criteria[0].Basis = capital.Result
 		}
 		curve := market.Curve{Name: "c", Distortion: g}
 		if strings.HasSuffix(name, "b10") {
@@ -90,7 +90,7 @@ func TestNothingBelowTheBound(t *testing.T) {
 		c := randomCase(t, r)
 		c.Standards = c.Standards[1:2] // tail value at risk, deviation
 		if seed%2 == 1 {
-			c.Standards[0].Basis = capital.Result
+			c.Standards[0].Criteria[0].Basis = capital.Result
 		}
 		a, err := NewAppraiser(c)
 		if err != nil {
@@ -152,5 +152,74 @@ func TestBoundIsNotCertified(t *testing.T) {
 		if b := a.ThinLayerBound(space); b.Certified || !strings.Contains(b.Reason, reason) {
 			t.Errorf("%+v, want %s", b, reason)
 		}
+	}
+}
+
+// TestNothingOfACompanyBelowItsBound hunts for a programme below its certified bound where several standards drive, criteria are mixed, the company has other
+// risks and reinsurers fail.
+func TestNothingOfACompanyBelowItsBound(t *testing.T) {
+	certified, withRest := 0, 0
+	for seed := range uint64(500) {
+		r := newRand(seed)
+		c := enlarge(r, randomCase(t, r))
+		c.Owners = nil
+		c.Standards[4].Criteria[0].Measure, c.Standards[5].Criteria[0].Measure = capital.TailValueAtRisk, capital.TailValueAtRisk
+		c.Drive = [][]int{{1}, {3}, {4}, {5}, {1, 4}, {7, 3}, {6, 5}}[r.IntN(7)]
+		a, err := NewAppraiser(c)
+		if err != nil {
+			t.Fatal(err)
+		}
+		for range 4 {
+			p := withPanels(r, randomProgramme(r, c))
+			for i := range p.Treaties { // prices of the curves alone
+				p.Treaties[i].Premium, p.Treaties[i].Commission = treaty.Optional{}, treaty.Optional{}
+			}
+			bound := a.ThinLayerBound(Space{Start: p})
+			if !bound.Known {
+				t.Fatalf("seed %d: no bound under %v", seed, c.Drive)
+			}
+			if !bound.Certified {
+				continue
+			}
+			certified++
+			if c.Rest != nil {
+				withRest++
+			}
+			x, err := a.Appraise(p, false)
+			if err != nil {
+				t.Fatal(err)
+			}
+			if x.TotalCost.Value < bound.TotalCost-1e-9*100 {
+				t.Fatalf("seed %d: a programme costs %v, the bound is %v\n%+v", seed, x.TotalCost.Value, bound.TotalCost, p)
+			}
+		}
+	}
+	if certified < 500 || withRest < 200 {
+		t.Errorf("%d bounds were certified, %d of them with a rest of the company", certified, withRest)
+	}
+}
+
+// TestNoBoundIsKnown: a formula, a covariance and the owners' own price have none.
+func TestNoBoundIsKnown(t *testing.T) {
+	r := newRand(3)
+	c := enlarge(r, randomCase(t, r))
+	p := Space{Start: randomProgramme(r, c)}
+	for _, drive := range []int{6, 7} {
+		c.Owners, c.Drive = nil, []int{drive}
+		a, err := NewAppraiser(c)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if b := a.ThinLayerBound(p); b.Known || b.Certified || b.Reason == "" {
+			t.Errorf("%s: %+v", c.Standards[drive].Name, b)
+		}
+	}
+	c.Owners, c.Rest, c.Drive = market.Wang{Lambda: 0.2}, nil, []int{1}
+	a, err := NewAppraiser(c)
+	if err != nil {
+		t.Fatal(err)
+	}
+	if b := a.ThinLayerBound(p); b.Known || b.Certified {
+		t.Errorf("owners with a price of risk: %+v", b)
 	}
 }

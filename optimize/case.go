@@ -8,15 +8,28 @@ import (
 	"cedewright/portfolio/capital"
 	"cedewright/portfolio/fault"
 	"cedewright/portfolio/loss"
+	"cedewright/portfolio/security"
 )
 
 // Case is what stays the same while programmes are compared: the book, the market, the capital standards and what capital costs.
 type Case struct {
 	Book          loss.Book
 	Curves        []market.Curve     // names are unique
-	Standards     []capital.Standard // at least one; the first drives the search
-	CostOfCapital float64            // per year, as a fraction of required capital, ≥ 0
+	Standards     []capital.Standard // at least one
+	Drive         []int              // places of the standards of which the one that asks the most drives the search; none = the first
+	CostOfCapital float64            // per year, as a fraction of required capital, ≥ 0; unused when Owners is given
+	Owners        market.Distortion  // the owners' own price of the risk they keep; nil = the flat CostOfCapital
 	OwnFunds      float64            // money; 0 = not given
+	Rest          *capital.Rest      // what else the company stands for; nil = nothing. Only simulated standards look at it
+	Security      *security.Register // reinsurers behind the treaties; nil = none that can fail
+}
+
+// Drivers gives the places of the standards that drive.
+func (c Case) Drivers() []int {
+	if len(c.Drive) == 0 {
+		return []int{0}
+	}
+	return c.Drive
 }
 
 // Validate reports every fault of the case at once.
@@ -43,8 +56,35 @@ func (c Case) Validate() error {
 	if len(c.Standards) == 0 {
 		faults.Add(fault.Fault{Key: "capital.standards", Found: "no standard", Allowed: "at least one"})
 	}
-	for _, s := range c.Standards {
+	reinsurers := 0
+	if c.Security != nil {
+		reinsurers = len(c.Security.Reinsurers)
+		faults.AddError(c.Security.Validate())
+	}
+	for i, s := range c.Standards {
 		faults.AddError(s.Validate())
+		var err error
+		switch {
+		case s.Formula != nil:
+			err = s.Formula.Validate(c.Book.Table.Classes(), reinsurers)
+		case s.Covariance != nil:
+			err = s.Covariance.Validate()
+		}
+		for _, f := range fault.All(err) {
+			f.Key = fmt.Sprintf("capital.standards[%d].%s", i, f.Key)
+			faults.Add(*f)
+		}
+	}
+	for _, i := range c.Drive {
+		if i < 0 || i >= len(c.Standards) {
+			faults.Add(fault.Fault{Key: "capital.drive", Found: fmt.Sprintf("standard %d", i), Allowed: "standards of the case"})
+		}
+	}
+	if c.Rest != nil {
+		faults.AddError(c.Rest.Validate())
+		if c.Owners != nil && c.Rest.Quantile == nil {
+			faults.Add(fault.Fault{Key: "capital.owners", Found: "a price of risk beside a rest of the company that is a capital figure", Allowed: "a loss distribution for the rest, or a flat cost of capital"})
+		}
 	}
 	if !(c.CostOfCapital >= 0) || math.IsInf(c.CostOfCapital, 0) {
 		faults.Add(fault.Fault{Key: "capital.cost", Found: fmt.Sprint(c.CostOfCapital), Allowed: "a rate of at least 0 per year"})

@@ -102,44 +102,114 @@ func (a *Appraiser) flows(items []item, known map[*priced]flow, w *workspace) []
 	return all
 }
 
-// detail adds standard errors, treaties' reliefs and the influence of the total cost. w.loss holds the net losses of the programme.
-func (a *Appraiser) detail(result *Appraisal, items []item, t totals, w *workspace) error {
+// detail adds standard errors, treaties' reliefs and the influence of the total cost.
+func (a *Appraiser) detail(result *Appraisal, p *position, all []requirement, w *workspace) error {
 	known := map[*priced]flow{}
-	flows := a.flows(items, known, w)
-	losses := slices.Clone(w.loss)
-
-	margin := a.moneyErrors(result, items, flows)
-	var driving []float64 // influence of required capital under the first standard
-	for i, s := range a.c.Standards {
-		phi := a.capitalInfluence(s, losses, items, flows, result.Capital[i].Net.Value)
-		if i == 0 {
-			driving = phi
+	flows := a.flows(p.items, known, w)
+	unpaid := a.unpaidErrors(result, p)
+	margin := a.moneyErrors(result, p.items, flows)
+	driver := a.driving(all)
+	var driving moves
+	for i := range a.rules {
+		m := a.rules[i].moves(p, all[i], flows)
+		phi := m.influence(flows)
+		if i == driver {
+			driving = m
 		}
 		figure := &result.Capital[i]
-		figure.Gross.StandardError = a.gross[i].figure.StandardError
-		figure.Net.StandardError = sample.InfluenceError(phi)
-		relief := slices.Clone(a.gross[i].influence)
-		addScaled(relief, -1, phi)
-		figure.Relief.StandardError = sample.InfluenceError(relief)
+		a.capitalErrors(figure, a.gross[i].figure, a.gross[i].influence, phi)
+		if figure.Alone != nil {
+			a.aloneErrors(figure.Alone, i, p, all[i], flows)
+		}
 		if i < len(result.OwnFundsRatio) && figure.Net.Value > 0 {
 			ratio := &result.OwnFundsRatio[i]
 			ratio.StandardError = ratio.Value * figure.Net.StandardError / figure.Net.Value
 		}
-		if i == 0 && result.RentDefined {
-			addScaled(relief, -1/result.Rent.Value, margin)
-			result.Rent.StandardError = math.Abs(result.Rent.Value/figure.Relief.Value) * sample.InfluenceError(relief)
-			if result.Rent.Value == 0 {
-				result.Rent.StandardError = sample.InfluenceError(margin) / figure.Relief.Value
-			}
+		figure.Parts = a.rules[i].parts(p, w)
+		for k := range figure.Parts {
+			figure.Parts[k].Gross = a.gross[i].parts[k].Amount
 		}
 	}
-	result.CapitalCost.StandardError = a.c.CostOfCapital * result.Capital[0].Net.StandardError
+	figure := &result.Driving
+	figure.Alone, figure.Parts = result.Capital[driver].Alone, result.Capital[driver].Parts
+	phi := driving.influence(flows)
+	gross := a.gross[a.grossDriver()]
+	relief := a.capitalErrors(figure, gross.figure, gross.influence, phi)
+	if result.RentDefined {
+		addScaled(relief, -1/result.Rent.Value, margin)
+		result.Rent.StandardError = math.Abs(result.Rent.Value/figure.Relief.Value) * sample.InfluenceError(relief)
+		if result.Rent.Value == 0 {
+			result.Rent.StandardError = sample.InfluenceError(margin) / figure.Relief.Value
+		}
+	}
+	cost := a.capitalCostMoves(p, all, driver, driving, flows)
+	kept := cost.influence(flows)
+	result.CapitalCost.StandardError = sample.InfluenceError(kept)
 	result.CostInfluence = margin
-	addScaled(result.CostInfluence, a.c.CostOfCapital, driving)
+	addScaled(result.CostInfluence, 1, unpaid)
+	addScaled(result.CostInfluence, 1, kept)
 	result.TotalCost.StandardError = sample.InfluenceError(result.CostInfluence)
-	a.resultErrors(&result.NetResult, losses, items, flows)
-	a.priceErrors(result, items, flows, losses)
-	return a.reliefs(result, driving, known, w)
+	a.resultErrors(&result.NetResult, p.losses, p.items, flows)
+	a.priceErrors(result, p.items, flows, cost)
+	return a.reliefs(result, phi, known, w)
+}
+
+// capitalErrors fills the errors of a capital figure from the influences of gross and net, and gives the influence of the relief.
+func (a *Appraiser) capitalErrors(figure *CapitalFigure, gross Estimate, before, after []float64) []float64 {
+	figure.Gross.StandardError = gross.StandardError
+	figure.Net.StandardError = sample.InfluenceError(after)
+	relief := slices.Clone(before)
+	addScaled(relief, -1, after)
+	figure.Relief.StandardError = sample.InfluenceError(relief)
+	return relief
+}
+
+// aloneFigure gives a simulated standard's requirement of the book alone and its influence; nothing for other standards or without a rest of the company.
+func (a *Appraiser) aloneFigure(i int, p *position, q requirement, flows []flow) (Estimate, []float64) {
+	r, ok := a.rules[i].(*simulatedRule)
+	if !ok || a.c.Rest == nil {
+		return Estimate{}, nil
+	}
+	w := workspace{}
+	_, setBy := r.of(view{p.losses, p.mean, p.tails}, &w)
+	phi := r.movesOf(view{p.losses, p.mean, p.tails}, setBy, p.items, flows).influence(flows)
+	return Estimate{q.alone, sample.InfluenceError(phi)}, phi
+}
+
+func (a *Appraiser) aloneErrors(figure *Alone, i int, p *position, q requirement, flows []flow) {
+	net, phi := a.aloneFigure(i, p, q, flows)
+	figure.Gross.StandardError = a.gross[i].alone.StandardError
+	figure.Net.StandardError = net.StandardError
+	relief := slices.Clone(a.gross[i].aloneInfluence)
+	addScaled(relief, -1, phi)
+	figure.Relief.StandardError = sample.InfluenceError(relief)
+}
+
+// unpaidErrors fills the errors of what reinsurers leave unpaid, and gives its influence in total.
+func (a *Appraiser) unpaidErrors(result *Appraisal, p *position) []float64 {
+	total := make([]float64, a.years)
+	if a.failures == nil {
+		return total
+	}
+	w := a.scratch.Get().(*workspace)
+	defer a.scratch.Put(w)
+	for _, it := range p.items {
+		own := make([]float64, a.years)
+		if it.terms.Kind == treaty.QuotaShare {
+			a.unpaid(it.terms, it.subject.annual, own)
+		} else {
+			w.recover(it.terms, it.subject)
+			a.unpaid(it.terms, w.annual, own)
+			w.reset()
+		}
+		treatyFigure(result, it.terms.Name).ExpectedUnpaid.StandardError = sample.InfluenceError(own)
+		addScaled(total, 1, own)
+	}
+	for y := range total {
+		total[y] -= result.ExpectedUnpaid.Value
+	}
+	result.ExpectedUnpaid.StandardError = sample.InfluenceError(total)
+	return total
 }
 
 // moneyErrors fills the errors of the money flows, in total and by treaty, and gives the influence of the ceded margin.
@@ -194,28 +264,6 @@ func binomialError(p float64, n int) float64 { return math.Sqrt(p * (1 - p) / fl
 func treatyFigure(result *Appraisal, name string) *TreatyFigure {
 	i := slices.IndexFunc(result.Treaties, func(f TreatyFigure) bool { return f.Terms.Name == name })
 	return &result.Treaties[i]
-}
-
-// capitalInfluence is the influence of required capital: through the net losses, and through prices that follow the simulated years.
-func (a *Appraiser) capitalInfluence(s capital.Standard, losses []float64, items []item, flows []flow, amount float64) []float64 {
-	phi := s.Influence(losses, nil)
-	if amount == 0 {
-		return phi
-	}
-	var weights []float64
-	for i, it := range items {
-		f, placed := flows[i], it.terms.Placed()
-		if f.premium != nil {
-			if f.reinstated != nil && weights == nil {
-				weights = tailWeights(losses, s.Measure, s.Level)
-			}
-			addScaled(phi, placed*capitalSlope(s, amount, weights, f, it.priced), f.premium)
-		}
-		if f.commission != nil && s.Basis == capital.Result {
-			addScaled(phi, -placed, f.commission)
-		}
-	}
-	return phi
 }
 
 // tailWeights gives the weight of each year in a risk measure, mean 1. Value at risk sits on a single year; its weights are spread
@@ -274,24 +322,23 @@ func (a *Appraiser) resultErrors(result *NetResult, losses []float64, items []it
 	}
 }
 
-// reliefs fills each treaty's last-in relief under the first standard: capital without it less capital with the whole programme.
+// reliefs fills each treaty's last-in relief: driving capital without it less driving capital with the whole programme.
 func (a *Appraiser) reliefs(result *Appraisal, driving []float64, known map[*priced]flow, w *workspace) error {
-	s := a.c.Standards[0]
 	for i := range result.Treaties {
 		figure := &result.Treaties[i]
 		if figure.Terms.Placed() == 0 {
 			continue
 		}
-		others, err := a.items(without(result.Programme, figure.Terms.Name), w)
+		others, _, err := a.positionOf(without(result.Programme, figure.Terms.Name), w)
 		if err != nil {
 			return err
 		}
-		a.netLosses(others, w)
-		copy(w.sorted, w.loss)
-		amount := s.Amount(w.sorted, a.meanNet(a.totals(others)))
-		figure.Relief.Value = amount - result.Capital[0].Net.Value
-		losses := slices.Clone(w.loss)
-		phi := a.capitalInfluence(s, losses, others, a.flows(others, known, w), amount)
+		all := a.requirements(others, w)
+		driver := a.driving(all)
+		figure.Relief.Value = all[driver].amount - result.Driving.Net.Value
+		others = others.own()
+		flows := a.flows(others.items, known, w)
+		phi := a.rules[driver].moves(others, all[driver], flows).influence(flows)
 		addScaled(phi, -1, driving)
 		figure.Relief.StandardError = sample.InfluenceError(phi)
 	}

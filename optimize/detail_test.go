@@ -30,9 +30,9 @@ func replicate(t testing.TB, seed uint64) (full, half Appraisal) {
 			{Name: "low", Distortion: market.Wang{Lambda: 0.1}, Brokerage: 0.02},
 		},
 		Standards: []capital.Standard{
-			{Name: "var", Measure: capital.ValueAtRisk, Level: mustLevel("98%"), Basis: capital.Result},
-			{Name: "tvar", Measure: capital.TailValueAtRisk, Level: mustLevel("95%"), Basis: capital.Deviation},
-			{Name: "tvar result", Measure: capital.TailValueAtRisk, Level: mustLevel("95%"), Basis: capital.Result},
+			capital.Single("var", capital.ValueAtRisk, mustLevel("98%"), capital.Result, ""),
+			capital.Single("tvar", capital.TailValueAtRisk, mustLevel("95%"), capital.Deviation, ""),
+			capital.Single("tvar result", capital.TailValueAtRisk, mustLevel("95%"), capital.Result, ""),
 		},
 		CostOfCapital: 0.1, OwnFunds: 200,
 	})

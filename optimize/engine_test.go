@@ -64,16 +64,10 @@ func randomCase(t testing.TB, r *rand.Rand) Case {
 	for _, name := range classes {
 		c.Book.Classes = append(c.Book.Classes, loss.Class{Name: name, Premium: 20 + float64(r.IntN(50)), Expenses: 0.3})
 	}
-	for _, s := range []capital.Standard{
-		{Name: "v", Measure: capital.ValueAtRisk, Basis: capital.Result}, {Name: "t", Measure: capital.TailValueAtRisk, Basis: capital.Deviation},
-		{Name: "d", Measure: capital.ValueAtRisk, Basis: capital.Deviation}, {Name: "u", Measure: capital.TailValueAtRisk, Basis: capital.Result},
-	} {
-		level, err := sample.LevelOf([]float64{0.8, 0.9, 0.95, 0.99}[r.IntN(4)])
-		if err != nil {
-			t.Fatal(err)
-		}
-		s.Level = level
-		c.Standards = append(c.Standards, s)
+	level := func() sample.Level { return mustLevel([]string{"80%", "90%", "95%", "99%"}[r.IntN(4)]) }
+	c.Standards = []capital.Standard{
+		capital.Single("v", capital.ValueAtRisk, level(), capital.Result, ""), capital.Single("t", capital.TailValueAtRisk, level(), capital.Deviation, ""),
+		capital.Single("d", capital.ValueAtRisk, level(), capital.Deviation, ""), capital.Single("u", capital.TailValueAtRisk, level(), capital.Result, ""),
 	}
 	return c
 }
@@ -169,15 +163,7 @@ func plainAppraisal(t testing.TB, c Case, p treaty.Programme) Appraisal {
 	}
 	for _, s := range c.Standards {
 		k := func(values []float64) float64 {
-			x := sampleOf(t, values)
-			risk := x.VaR(s.Level)
-			if s.Measure == capital.TailValueAtRisk {
-				risk = x.TVaR(s.Level)
-			}
-			if s.Basis == capital.Deviation {
-				return risk - x.Mean()
-			}
-			return max(risk, 0)
+			return plainStandard(sampleOf(t, values), s)
 		}
 		a.Capital = append(a.Capital, CapitalFigure{Gross: Estimate{Value: k(gross)}, Net: Estimate{Value: k(losses)}})
 	}
@@ -185,6 +171,27 @@ func plainAppraisal(t testing.TB, c Case, p treaty.Programme) Appraisal {
 	a.NetResult = NetResult{Mean: Estimate{Value: -x.Mean()}, StandardDeviation: x.StandardDeviation(), OneIn10: Estimate{Value: -x.VaR(oneIn10)}, OneIn200: Estimate{Value: -x.VaR(oneIn200)}}
 	a.TotalCost.Value = a.CededMargin.Value + c.CostOfCapital*a.Capital[0].Net.Value
 	return a
+}
+
+// plainStandard works a simulated standard out from a sorted sample.
+func plainStandard(x sample.Sample, s capital.Standard) float64 {
+	worst, sum := math.Inf(-1), 0.0
+	for _, k := range s.Criteria {
+		risk := x.VaR(k.Level)
+		if k.Measure == capital.TailValueAtRisk {
+			risk = x.TVaR(k.Level)
+		}
+		if k.Basis == capital.Deviation {
+			risk -= x.Mean()
+		} else {
+			risk = max(risk, 0)
+		}
+		worst, sum = max(worst, k.Ratio*risk), sum+k.Weight*k.Ratio*risk
+	}
+	if s.Combination == capital.Weighted {
+		return sum
+	}
+	return worst
 }
 
 func sampleOf(t testing.TB, values []float64) sample.Sample {

@@ -12,7 +12,7 @@ import (
 // Keep is a constraint: a measure of the appraisal must lie within bounds.
 type Keep struct {
 	Measure  string          // one of MeasureNames
-	Standard string          // for measures of capital: name of the standard; "" = the first
+	Standard string          // for measures of capital: name of the standard; "" = the one that drives
 	AtMost   treaty.Optional // in the measure's unit
 	AtLeast  treaty.Optional
 }
@@ -67,8 +67,12 @@ func (k Keep) check(faults *fault.List, key string) {
 // value reads the measure; NaN when the appraisal does not have it (an own funds ratio without own funds).
 func (k Keep) value(a Appraisal) float64 {
 	standard := 0
+	wanted := k.Standard
+	if wanted == "" {
+		wanted = a.Driving.Standard
+	}
 	for i, c := range a.Capital {
-		if c.Standard == k.Standard {
+		if c.Standard == wanted {
 			standard = i
 		}
 	}

@@ -36,7 +36,7 @@ func exponentialCase(t testing.TB, n int, d market.Distortion, m capital.Measure
 	a, err := NewAppraiser(Case{
 		Book:          loss.Book{Classes: []loss.Class{{Name: "all"}}, Table: table},
 		Curves:        []market.Curve{{Name: "c", Distortion: d}},
-		Standards:     []capital.Standard{{Name: "s", Measure: m, Level: l, Basis: capital.Deviation}},
+		Standards:     []capital.Standard{capital.Single("s", m, l, capital.Deviation, "")},
 		CostOfCapital: cost,
 	})
 	if err != nil {
@@ -149,8 +149,8 @@ func TestStopLossOptima(t *testing.T) {
 		a, err := NewAppraiser(Case{
 			Book: loss.Book{Classes: []loss.Class{{Name: "all"}}, Table: table},
 			Standards: []capital.Standard{
-				{Name: "var", Measure: capital.ValueAtRisk, Level: mustLevel("95%"), Basis: capital.Result},
-				{Name: "tvar", Measure: capital.TailValueAtRisk, Level: mustLevel("95%"), Basis: capital.Result},
+				capital.Single("var", capital.ValueAtRisk, mustLevel("95%"), capital.Result, ""),
+				capital.Single("tvar", capital.TailValueAtRisk, mustLevel("95%"), capital.Result, ""),
 			},
 		})
 		if err != nil {

@@ -5,16 +5,13 @@ import (
 	"slices"
 
 	"cedewright/market"
-	"cedewright/portfolio/capital"
 	"cedewright/portfolio/treaty"
 )
 
 // priceErrors fills what the quotes, as against the simulated years, leave uncertain: each replicate of the curves moves the premiums of all treaties that
-// they price, together, so that treaties on one curve err together; curves were resampled apart. Required capital moves with the premiums by
-// its derivative at the programme in hand.
-func (a *Appraiser) priceErrors(result *Appraisal, items []item, flows []flow, losses []float64) {
-	s := a.c.Standards[0]
-	var weights []float64
+// they price, together, so that treaties on one curve err together; curves were resampled apart. What the owners ask for the risk kept moves with
+// the premiums by its derivative at the programme in hand.
+func (a *Appraiser) priceErrors(result *Appraisal, items []item, flows []flow, kept moves) {
 	for i, it := range items {
 		figure := treatyFigure(result, it.terms.Name)
 		curve := a.curve(it.terms.Curve)
@@ -27,43 +24,18 @@ func (a *Appraiser) priceErrors(result *Appraisal, items []item, flows []flow, l
 		slices.Reverse(descending)
 		placed := it.terms.Placed()
 		if it.terms.Kind == treaty.QuotaShare {
-			moves := curve.Replicates.Commissions(it.terms, descending, a.years)
-			figure.PriceError = placed * spread(moves)
-			slope := 1.0
-			if s.Basis == capital.Result && result.Capital[0].Net.Value > 0 {
-				slope += a.c.CostOfCapital
-			}
-			result.addMoves(moves, -placed, -placed*slope)
+			shifts := curve.Replicates.Commissions(it.terms, descending, a.years)
+			figure.PriceError = placed * spread(shifts)
+			result.addMoves(shifts, -placed, -placed+kept.commission[i])
 			continue
 		}
-		moves := curve.Replicates.BasePremiums(it.terms, descending, a.years)
-		figure.PriceError = placed * spread(moves)
-		if weights == nil && flows[i].reinstated != nil {
-			weights = tailWeights(losses, s.Measure, s.Level)
-		}
+		shifts := curve.Replicates.BasePremiums(it.terms, descending, a.years)
+		figure.PriceError = placed * spread(shifts)
 		margin := placed * (1 + it.priced.reinstated)
-		result.addMoves(moves, margin, margin+a.c.CostOfCapital*placed*capitalSlope(s, result.Capital[0].Net.Value, weights, flows[i], it.priced))
+		result.addMoves(shifts, margin, margin+kept.base[i])
 	}
 	result.MarginPriceError = spread(result.marginMoves)
 	result.CostPriceError = spread(result.CostPriceMoves)
-}
-
-// capitalSlope is by how much required capital rises when the base premium of a full treaty rises by one.
-func capitalSlope(s capital.Standard, amount float64, weights []float64, f flow, k *priced) float64 {
-	if amount == 0 {
-		return 0
-	}
-	slope := 1.0
-	if s.Basis == capital.Deviation {
-		slope = 0
-	}
-	if f.reinstated != nil {
-		slope += meanProduct(weights, f.reinstated)
-		if s.Basis == capital.Deviation {
-			slope -= k.reinstated
-		}
-	}
-	return slope
 }
 
 // addMoves adds the moves of one treaty's price to those of margin and total cost.

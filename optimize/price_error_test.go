@@ -36,7 +36,7 @@ func TestPriceErrorsAgainstRefitting(t *testing.T) {
 	}
 	c := Case{
 		Book:          loss.Book{Classes: []loss.Class{{Name: "a", Premium: 45, Expenses: 0.25}}, Table: table},
-		Standards:     []capital.Standard{{Name: "s", Measure: capital.TailValueAtRisk, Level: mustLevel("95%"), Basis: capital.Result}},
+		Standards:     []capital.Standard{capital.Single("s", capital.TailValueAtRisk, mustLevel("95%"), capital.Result, "")},
 		CostOfCapital: 0.1,
 	}
 	p := treaty.Programme{Treaties: []treaty.Treaty{

@@ -55,7 +55,8 @@ func (s shop) Appraise(p treaty.Programme, _ bool) (Appraisal, error) {
 		worst += x / 10
 	}
 	k := worst - mean
-	a := Appraisal{Programme: p, Capital: []CapitalFigure{{Net: Estimate{Value: k}, Relief: Estimate{Value: 1000 - k}}}}
+	figure := CapitalFigure{Net: Estimate{Value: k}, Relief: Estimate{Value: 1000 - k}}
+	a := Appraisal{Programme: p, Capital: []CapitalFigure{figure}, Driving: figure}
 	a.CededMargin.Value, a.CapitalCost.Value, a.TotalCost.Value = margin, s.R*k, margin+s.R*k
 	return a, nil
 }

@@ -39,7 +39,7 @@ type subject struct {
 	events  int       // perRisk only: count of events
 	annual  []float64 // perYear only: sum of each year, in order of years
 	mean    float64   // perYear only: mean of annual
-	premium float64   // perYear only: premium of the classes, net of what inuring quota shares cede (set per treaty, not here)
+	byClass []float64 // what part of the subject loss falls on each class; all 0 without a loss
 }
 
 // bytes is the memory that a subject holds, for the cache's budget.
@@ -79,14 +79,37 @@ func anyBoth(a, b []bool) bool {
 
 // newSubject collects the units of one basis from the selected rows, whose losses (net of inuring treaties) are given row by row.
 func newSubject(t *loss.Table, b basis, chosen selection, losses []float64) *subject {
+	var s *subject
 	switch b {
 	case perEvent:
-		return eventSubject(t, chosen, losses)
+		s = eventSubject(t, chosen, losses)
 	case perRisk:
-		return riskSubject(t, chosen, losses)
+		s = riskSubject(t, chosen, losses)
 	default:
-		return yearSubject(t, chosen, losses)
+		s = yearSubject(t, chosen, losses)
 	}
+	s.byClass = classParts(t, b, chosen, losses)
+	return s
+}
+
+// classParts gives the part of the subject loss that falls on each class.
+func classParts(t *loss.Table, b basis, chosen selection, losses []float64) []float64 {
+	c := t.Columns()
+	parts := make([]float64, len(t.Classes()))
+	total := 0.0
+	for row, x := range losses {
+		if !chosen.class[c.Class[row]] || !chosen.peril[c.Peril[row]] || b != perYear && c.Event[row] == loss.NoEvent || b == perRisk && c.Risk[row] == loss.NoRisk {
+			continue
+		}
+		parts[c.Class[row]] += x
+		total += x
+	}
+	for i := range parts {
+		if total > 0 {
+			parts[i] /= total
+		}
+	}
+	return parts
 }
 
 func yearSubject(t *loss.Table, chosen selection, losses []float64) *subject {

@@ -12,19 +12,13 @@ import "cedewright/portfolio/sample"
 // do not let expected profit count are met by basis deviation, set in the study beside the preset. (Common practice, no source.)
 func Presets() []Standard {
 	return []Standard{
-		{
-			Name: "eu-one-year", Measure: ValueAtRisk, Level: level("99.5%"), Basis: Result,
-			Source: "Directive 2009/138/EC, Art. 101(3): value at risk of basic own funds, 99.5 %, one year (read in the consolidated text)",
-		},
-		{
-			Name: "swiss-one-year", Measure: TailValueAtRisk, Level: level("99%"), Basis: Result,
-			Source: "Swiss Supervision Ordinance (AVO), Art. 41: expected shortfall of the one-year change in risk-bearing capital " +
-				"(read in the text of 1 July 2015; the level of 99 % is from memory)",
-		},
-		{
-			Name: "bermuda-one-year", Measure: TailValueAtRisk, Level: level("99%"), Basis: Result,
-			Source: "Bermuda solvency capital requirement: aimed at tail value at risk, 99 %, one year (from memory, no text was read)",
-		},
+		Single("eu-one-year", ValueAtRisk, level("99.5%"), Result,
+			"Directive 2009/138/EC, Art. 101(3): value at risk of basic own funds, 99.5 %, one year (read in the consolidated text)"),
+		Single("swiss-one-year", TailValueAtRisk, level("99%"), Result,
+			"Swiss Supervision Ordinance (AVO), Art. 41: expected shortfall of the one-year change in risk-bearing capital "+
+				"(read in the text of 1 July 2015; the level of 99 % is from memory)"),
+		Single("bermuda-one-year", TailValueAtRisk, level("99%"), Result,
+			"Bermuda solvency capital requirement: aimed at tail value at risk, 99 %, one year (from memory, no text was read)"),
 	}
 }
 

@@ -2,133 +2,123 @@ package capital
 
 import (
 	"fmt"
+	"math"
 
 	"cedewright/portfolio/fault"
 	"cedewright/portfolio/sample"
 )
 
-// Measure is the risk measure of a standard.
-type Measure uint8
+// Combination says how several criteria make one requirement.
+type Combination uint8
 
-// The measures.
+// The combinations.
 const (
-	ValueAtRisk Measure = iota + 1
-	TailValueAtRisk
+	Worst    Combination = iota // the criterion that asks the most; also a single criterion
+	Weighted                    // the sum of weight times criterion
 )
 
-var measureNames = [...]string{ValueAtRisk: "value-at-risk", TailValueAtRisk: "tail-value-at-risk"}
+var combinationNames = [...]string{Worst: "worst", Weighted: "weighted"}
 
-// MeasureNames lists the names that ParseMeasure accepts.
-func MeasureNames() []string { return measureNames[1:] }
+// CombinationNames lists the names that ParseCombination accepts.
+func CombinationNames() []string { return combinationNames[:] }
 
-// String gives the name used in studies.
-func (m Measure) String() string {
-	if m >= ValueAtRisk && m <= TailValueAtRisk {
-		return measureNames[m]
-	}
-	return fmt.Sprintf("Measure(%d)", uint8(m))
-}
-
-// ParseMeasure gives the measure of that name.
-func ParseMeasure(name string) (Measure, error) {
-	for m := ValueAtRisk; m <= TailValueAtRisk; m++ {
-		if measureNames[m] == name {
-			return m, nil
+// ParseCombination gives the combination of that name.
+func ParseCombination(name string) (Combination, error) {
+	for i, known := range combinationNames {
+		if known == name {
+			return Combination(i), nil
 		}
 	}
-	return 0, fmt.Errorf("capital: measure %q is unknown", name)
+	return 0, fmt.Errorf("capital: combination %q is unknown", name)
 }
 
-// Basis says from where a loss is counted.
-type Basis uint8
-
-// The bases.
-const (
-	Result    Basis = iota + 1 // K = max(0, ρ(−U)): assets needed less premiums held
-	Deviation                  // K = ρ(−U) − E[−U]: the loss beyond the expected result
-)
-
-var basisNames = [...]string{Result: "result", Deviation: "deviation"}
-
-// BasisNames lists the names that ParseBasis accepts.
-func BasisNames() []string { return basisNames[1:] }
-
-// String gives the name used in studies.
-func (b Basis) String() string {
-	if b >= Result && b <= Deviation {
-		return basisNames[b]
-	}
-	return fmt.Sprintf("Basis(%d)", uint8(b))
-}
-
-// ParseBasis gives the basis of that name.
-func ParseBasis(name string) (Basis, error) {
-	for b := Result; b <= Deviation; b++ {
-		if basisNames[b] == name {
-			return b, nil
-		}
-	}
-	return 0, fmt.Errorf("capital: basis %q is unknown", name)
-}
-
-// Standard is a rule that turns the net result U of a year into required capital.
+// Standard is a rule that turns the net position into required capital: criteria on the simulated result of a year, or a formula on volumes and
+// scenarios, or a covariance of charges. Exactly one of the three is given.
 type Standard struct {
-	Name    string // name in the study
-	Measure Measure
-	Level   sample.Level // of the measure, above 0
-	Basis   Basis
-	Source  string // legal source and how it is known, or "set in the study"
+	Name        string // name in the study
+	Source      string // legal source and how it is known, or "set in the study"
+	Criteria    []Criterion
+	Combination Combination
+	Formula     *Formula
+	Covariance  *Covariance
 }
 
-// Validate reports every fault of the standard.
+// Single gives a standard of one criterion, held as measured.
+func Single(name string, m Measure, l sample.Level, b Basis, source string) Standard {
+	return Standard{Name: name, Source: source, Criteria: []Criterion{{Measure: m, Level: l, Basis: b, Ratio: 1}}}
+}
+
+// Simulated tells whether the standard looks at the simulated result of a year.
+func (s Standard) Simulated() bool { return len(s.Criteria) > 0 }
+
+// Validate reports every fault of the standard's criteria or covariance, and of its having more than one part or none. The classes and reinsurers that a
+// formula is checked against it does not know: see Formula.Validate.
 func (s Standard) Validate() error {
 	var faults fault.List
 	key := "standard " + s.Name
-	if s.Measure != ValueAtRisk && s.Measure != TailValueAtRisk {
-		faults.Add(fault.Fault{Key: key + ".measure", Found: s.Measure.String(), Allowed: fmt.Sprint(MeasureNames())})
+	parts := 0
+	for _, given := range []bool{len(s.Criteria) > 0, s.Formula != nil, s.Covariance != nil} {
+		if given {
+			parts++
+		}
 	}
-	if s.Basis != Result && s.Basis != Deviation {
-		faults.Add(fault.Fault{Key: key + ".basis", Found: s.Basis.String(), Allowed: fmt.Sprint(BasisNames())})
+	if parts != 1 {
+		faults.Add(fault.Fault{Key: key, Found: fmt.Sprintf("%d of criteria, formula and covariance", parts), Allowed: "exactly one"})
 	}
-	if s.Level.Float() <= 0 {
-		faults.Add(fault.Fault{Key: key + ".level", Found: s.Level.String(), Allowed: "above 0 and below 1, such as 99.5%"})
+	sum := 0.0
+	for i, c := range s.Criteria {
+		at := key
+		if len(s.Criteria) > 1 {
+			at = fmt.Sprintf("%s.criteria[%d]", key, i)
+		}
+		c.check(&faults, at)
+		if s.Combination == Weighted && !(c.Weight > 0 && c.Weight <= 1) {
+			faults.Add(fault.Fault{Key: at + ".weight", Found: fmt.Sprint(c.Weight), Allowed: "a fraction above 0, at most 1"})
+		}
+		sum += c.Weight
+	}
+	if s.Combination == Weighted && math.Abs(sum-1) > 1e-9 { // rounding of decimals
+		faults.Add(fault.Fault{Key: key + ".criteria", Found: fmt.Sprintf("weights of %.6g %% together", 100*sum), Allowed: "weights that come to 100 %"})
 	}
 	return faults.Err()
 }
 
-// Amount gives required capital, in money, from −U of each year, which it reorders, and its mean. It allocates nothing. On basis result
-// it is never below 0. The deviation of a value at risk may be negative at low levels.
-func (s Standard) Amount(losses []float64, mean float64) float64 {
-	var risk float64
-	if s.Measure == TailValueAtRisk {
-		_, risk = sample.Tail(losses, s.Level)
-	} else {
-		risk = sample.Select(losses, s.Level.Rank(len(losses)))
+// Combine gives required capital from the amounts of the criteria, and the criterion that sets it; −1 when several share in it by weight.
+func (s Standard) Combine(amounts []float64) (amount float64, setBy int) {
+	if s.Combination == Weighted {
+		for i, x := range amounts {
+			amount += float64(s.Criteria[i].Weight * x)
+		}
+		return amount, -1
 	}
-	if s.Basis == Deviation {
-		return risk - mean
+	for i, x := range amounts {
+		if x > amounts[setBy] {
+			setBy = i
+		}
 	}
-	return max(risk, 0)
+	return amounts[setBy], setBy
 }
 
-// Influence gives the influence of each year on required capital, in order of years; zero where the capital is held at 0. Its standard
-// deviation over √N is the standard error of Amount. Losses are left untouched; dst is reused when it is long enough.
-func (s Standard) Influence(losses, dst []float64) []float64 {
-	if s.Measure == TailValueAtRisk {
-		dst = sample.TVaRInfluence(losses, s.Level, dst)
-	} else {
-		dst = sample.VaRInfluence(losses, s.Level, dst)
-	}
-	if s.Basis == Deviation {
-		mean := sample.Sum(losses) / float64(len(losses))
-		for i, x := range losses {
-			dst[i] -= x - mean
+// Shares gives the weight with which each criterion enters required capital, given the criterion that sets it (see Combine): its slope.
+func (s Standard) Shares(setBy int) []float64 {
+	shares := make([]float64, len(s.Criteria))
+	for i, c := range s.Criteria {
+		switch {
+		case s.Combination == Weighted:
+			shares[i] = c.Weight
+		case i == setBy:
+			shares[i] = 1
 		}
-		return dst
 	}
-	scratch := append([]float64(nil), losses...)
-	if s.Amount(scratch, 0) == 0 {
-		clear(dst)
+	return shares
+}
+
+// Amount gives required capital of a simulated standard, in money, from −U of each year, which it reorders, and its mean.
+func (s Standard) Amount(losses []float64, mean float64) float64 {
+	amounts := make([]float64, len(s.Criteria))
+	for i, c := range s.Criteria {
+		amounts[i] = c.Amount(losses, mean)
 	}
-	return dst
+	amount, _ := s.Combine(amounts)
+	return amount
 }

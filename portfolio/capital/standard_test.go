@@ -4,6 +4,7 @@ import (
 	"fmt"
 	"math"
 	"math/rand/v2"
+	"reflect"
 	"slices"
 	"strings"
 	"testing"
@@ -26,12 +27,12 @@ func TestPresets(t *testing.T) {
 		if len(p.Source) < 20 || !strings.Contains(p.Source, "read") && !strings.Contains(p.Source, "memory") {
 			t.Errorf("%s does not say where its rule is from and how that is known: %q", p.Name, p.Source)
 		}
-		if again, ok := Preset(p.Name); !ok || again != p {
+		if again, ok := Preset(p.Name); !ok || !reflect.DeepEqual(again, p) {
 			t.Errorf("Preset(%q) gives %+v", p.Name, again)
 		}
 	}
 	// Directive 2009/138/EC, Art. 101(3), read in the consolidated text: 99.5 %, one year.
-	if p, ok := Preset("eu-one-year"); !ok || p.Measure != ValueAtRisk || p.Level.String() != "99.5%" {
+	if p, ok := Preset("eu-one-year"); !ok || p.Criteria[0].Measure != ValueAtRisk || p.Criteria[0].Level.String() != "99.5%" {
 		t.Errorf("eu-one-year is %+v", p)
 	}
 	if _, ok := Preset("none"); ok {
@@ -56,8 +57,8 @@ func TestNames(t *testing.T) {
 	if _, err := ParseBasis(""); err == nil {
 		t.Error("an empty basis was read")
 	}
-	if err := (Standard{Name: "empty"}).Validate(); err == nil || strings.Count(err.Error(), "\n") != 2 {
-		t.Errorf("an empty standard has the faults %v, want three", err)
+	if err := (Standard{Name: "empty"}).Validate(); err == nil || strings.Count(err.Error(), "\n") != 0 {
+		t.Errorf("an empty standard has the faults %v, want one", err)
 	}
 }
 
@@ -76,16 +77,16 @@ func TestAmount(t *testing.T) {
 		{TailValueAtRisk, Result, "85%", (10 + 0.5*9) / 1.5},
 	} {
 		losses := []float64{4, 2, 10, 1, 9, 3, 8, 5, 7, 6}
-		s := Standard{Measure: c.measure, Basis: c.basis, Level: level(c.level)}
+		s := Criterion{Measure: c.measure, Basis: c.basis, Level: level(c.level), Ratio: 1}
 		if got := s.Amount(losses, 5.5); math.Abs(got-c.want) > 1e-12 {
 			t.Errorf("%v %v %v: %v, want %v", c.measure, c.level, c.basis, got, c.want)
 		}
 	}
 	gains := []float64{-3, -2, -1}
-	if got := (Standard{Measure: ValueAtRisk, Basis: Result, Level: level("90%")}).Amount(gains, -2); got != 0 {
+	if got := (Criterion{Measure: ValueAtRisk, Basis: Result, Level: level("90%"), Ratio: 1}).Amount(gains, -2); got != 0 {
 		t.Errorf("a company that cannot lose requires %v, want 0", got)
 	}
-	for _, x := range (Standard{Measure: ValueAtRisk, Basis: Result, Level: level("90%")}).Influence(gains, nil) {
+	for _, x := range (Criterion{Measure: ValueAtRisk, Basis: Result, Level: level("90%"), Ratio: 1}).Influence(gains, nil) {
 		if x != 0 {
 			t.Error("capital held at 0 has an influence")
 		}
@@ -95,9 +96,9 @@ func TestAmount(t *testing.T) {
 // TestInfluenceAgainstBatches: the standard error from influence values agrees with the spread over independent samples.
 func TestInfluenceAgainstBatches(t *testing.T) {
 	const runs, n = 300, 2000
-	for _, s := range []Standard{
-		{Measure: ValueAtRisk, Basis: Result, Level: level("95%")}, {Measure: ValueAtRisk, Basis: Deviation, Level: level("95%")},
-		{Measure: TailValueAtRisk, Basis: Result, Level: level("95%")}, {Measure: TailValueAtRisk, Basis: Deviation, Level: level("95%")},
+	for _, s := range []Criterion{
+		{Measure: ValueAtRisk, Basis: Result, Level: level("95%"), Ratio: 1}, {Measure: ValueAtRisk, Basis: Deviation, Level: level("95%"), Ratio: 1},
+		{Measure: TailValueAtRisk, Basis: Result, Level: level("95%"), Ratio: 1}, {Measure: TailValueAtRisk, Basis: Deviation, Level: level("95%"), Ratio: 1},
 	} {
 		r := rand.New(rand.NewPCG(5, 5))
 		sum, squares, stated := 0.0, 0.0, 0.0
@@ -134,11 +135,11 @@ func TestStandardByProperty(t *testing.T) {
 		backwards := append([]float64(nil), losses...)
 		slices.Reverse(backwards)
 		mean := func(x []float64) float64 { return sample.Sum(x) / float64(len(x)) }
-		amount := func(s Standard, x []float64) float64 {
+		amount := func(s Criterion, x []float64) float64 {
 			return s.Amount(append([]float64(nil), x...), mean(x))
 		}
 		for _, m := range []Measure{ValueAtRisk, TailValueAtRisk} {
-			deviation, result := Standard{Measure: m, Basis: Deviation, Level: l}, Standard{Measure: m, Basis: Result, Level: l}
+			deviation, result := Criterion{Measure: m, Basis: Deviation, Level: l, Ratio: 1}, Criterion{Measure: m, Basis: Result, Level: l, Ratio: 1}
 			plain := s.VaR(l)
 			if m == TailValueAtRisk {
 				plain = s.TVaR(l)
@@ -181,7 +182,7 @@ func TestInfluenceIsADerivative(t *testing.T) {
 	repeated := slices.Repeat(losses, copies)
 	before := slices.Clone(repeated)
 	for _, basis := range []Basis{Result, Deviation} {
-		s := Standard{Measure: TailValueAtRisk, Level: level("93%"), Basis: basis}
+		s := Criterion{Measure: TailValueAtRisk, Level: level("93%"), Basis: basis, Ratio: 1}
 		amount := func(x []float64) float64 { return s.Amount(slices.Clone(x), sample.Sum(x)/float64(len(x))) }
 		influence := s.Influence(repeated, make([]float64, n*copies))
 		if got := sample.Sum(influence) / n / copies; math.Abs(got) > 1e-9 { // rounding of 10,000 terms
@@ -205,11 +206,11 @@ func TestInfluenceOfAClippedAmount(t *testing.T) {
 	losses := []float64{-9, -5, -4, -8, -7, -6, -3, -2, -10, -1}
 	dst := []float64{1, 1, 1, 1, 1, 1, 1, 1, 1, 1, 1, 1}
 	for _, m := range []Measure{ValueAtRisk, TailValueAtRisk} {
-		got := Standard{Measure: m, Level: level("80%"), Basis: Result}.Influence(losses, dst)
+		got := Criterion{Measure: m, Level: level("80%"), Basis: Result, Ratio: 1}.Influence(losses, dst)
 		if len(got) != 10 || &got[0] != &dst[0] || sample.InfluenceError(got) != 0 || got[0] != 0 {
 			t.Errorf("%v: %v", m, got)
 		}
-		if got := (Standard{Measure: m, Level: level("80%"), Basis: Deviation}).Influence(losses, nil); sample.InfluenceError(got) == 0 {
+		if got := (Criterion{Measure: m, Level: level("80%"), Basis: Deviation, Ratio: 1}).Influence(losses, nil); sample.InfluenceError(got) == 0 {
 			t.Errorf("%v: a deviation without error", m)
 		}
 	}
@@ -239,9 +240,10 @@ func TestAmountAllocatesNothing(t *testing.T) {
 	for i := range losses {
 		losses[i] = float64(i * 7919 % 5000)
 	}
-	for _, s := range Presets() {
+	for _, p := range Presets() {
+		s := p.Criteria[0]
 		if n := testing.AllocsPerRun(10, func() { s.Amount(losses, 0) }); n != 0 {
-			t.Errorf("%s: %v allocations a run", s.Name, n)
+			t.Errorf("%s: %v allocations a run", p.Name, n)
 		}
 	}
 }
