@@ -10,10 +10,10 @@ import (
 )
 
 // FrontierCSV writes the frontier, a programme a row by rising relief, money in the study's currency, terms in words. A figure without a
-// value is an empty cell.
+// value is an empty cell. Relief and required capital are of what drives; standard names the one that asks the most of the programme.
 func FrontierCSV(w io.Writer, s study.Searched) error {
 	rows := [][]string{{"programme", "capital_relief", "capital_relief_error", "ceded_margin", "ceded_margin_error", "total_cost", "total_cost_error",
-		"required_capital", "required_capital_error", "ceded_premium", "rent", "treaties", "terms"}}
+		"required_capital", "required_capital_error", "ceded_premium", "rent", "treaties", "terms", "standard"}}
 	figure := func(x float64) string {
 		if !finite(x) {
 			return ""
@@ -29,11 +29,11 @@ func FrontierCSV(w io.Writer, s study.Searched) error {
 		if p.RentDefined {
 			rent = figure(p.Rent.Value)
 		}
-		c := p.Capital[0]
+		c := p.Driving
 		rows = append(rows, []string{
 			harmless(p.Programme.Name), figure(c.Relief.Value), figure(c.Relief.StandardError), figure(p.CededMargin.Value), figure(p.CededMargin.StandardError),
 			figure(p.TotalCost.Value), figure(p.TotalCost.StandardError), figure(c.Net.Value), figure(c.Net.StandardError), figure(p.CededPremium.Value), rent,
-			strconv.Itoa(len(p.Treaties)), harmless(strings.Join(terms, "; ")),
+			strconv.Itoa(len(p.Treaties)), harmless(strings.Join(terms, "; ")), harmless(c.Standard),
 		})
 	}
 	out := csv.NewWriter(w)

@@ -50,26 +50,15 @@ func figureGroups(a study.Appraised, all []optimize.Appraisal) []figureGroup {
 		}
 	}
 	fromQuotes(&groups[0], func(p optimize.Appraisal) float64 { return p.MarginPriceError })
-	for i, c := range all[0].Capital {
-		g := figureGroup{"Capital under the standard “" + c.Standard + "”", []figureRow{
-			money("required capital", func(p optimize.Appraisal) optimize.Estimate { return p.Capital[i].Net }),
-			money("capital relief", func(p optimize.Appraisal) optimize.Estimate { return p.Capital[i].Relief }),
-		}}
-		if a.OwnFunds > 0 {
-			g.rows = append(g.rows, row("own funds ratio", func(p optimize.Appraisal) string {
-				if i >= len(p.OwnFundsRatio) {
-					return "–"
-				}
-				return EstimatedPercent(p.OwnFundsRatio[i])
-			}))
-		}
-		groups = append(groups, g)
-	}
-	cost := figureGroup{"Total cost, a year", []figureRow{
+	groups = append(groups, capitalGroups(a, all, u)...)
+	cost := figureGroup{totalCostName(a), []figureRow{
 		money("ceded margin", func(p optimize.Appraisal) optimize.Estimate { return p.CededMargin }),
-		money("+ capital cost at "+Percent(a.CostOfCapital), func(p optimize.Appraisal) optimize.Estimate { return p.CapitalCost }),
-		total(money("= total cost", func(p optimize.Appraisal) optimize.Estimate { return p.TotalCost })),
 	}}
+	if a.Security != nil {
+		cost.rows = append(cost.rows, money("+ expected unpaid recoveries", func(p optimize.Appraisal) optimize.Estimate { return p.ExpectedUnpaid }))
+	}
+	cost.rows = append(cost.rows, money("+ "+capitalCostName(a), func(p optimize.Appraisal) optimize.Estimate { return p.CapitalCost }),
+		total(money("= total cost", func(p optimize.Appraisal) optimize.Estimate { return p.TotalCost })))
 	fromQuotes(&cost, func(p optimize.Appraisal) float64 { return p.CostPriceError })
 	if len(a.Differences) > 0 {
 		cost.rows = append(cost.rows, row("difference to "+a.Differences[0].Against, func(p optimize.Appraisal) string {
@@ -86,6 +75,9 @@ func figureGroups(a study.Appraised, all []optimize.Appraisal) []figureGroup {
 		}))
 	}
 	cost.rows = append(cost.rows, row("rent (margin / relief)", rent))
+	if a.Owners != "" {
+		cost.rows = append(cost.rows, row("owners' price / capital", ownersRate))
+	}
 	return append(groups, cost, figureGroup{"Net result of a year", []figureRow{
 		money("expected", func(p optimize.Appraisal) optimize.Estimate { return p.NetResult.Mean }),
 		row("standard deviation", func(p optimize.Appraisal) string { return u.amount(p.NetResult.StandardDeviation) }),
@@ -176,6 +168,12 @@ func termsOf(f optimize.TreatyFigure) string {
 	}
 	if e := priceError(f.PriceError, unitFor(max(f.Premium.Value, f.PriceError))); e != "–" {
 		text += "," + e + " from few quotes"
+	}
+	if panel := panelWords(f.Terms); panel != "" {
+		text += "; behind it: " + panel
+		if f.ExpectedUnpaid != (optimize.Estimate{}) {
+			text += "; expected unpaid " + Estimated(f.ExpectedUnpaid)
+		}
 	}
 	return clean(text)
 }

@@ -48,6 +48,14 @@ type textTable struct {
 	Remark bool // the last column is a remark
 }
 
+// Estimated tells whether some figure of a column has an error, for which all of the column leave room.
+func (t textTable) Estimated(column int) bool {
+	return slices.ContainsFunc(t.Rows, func(row []string) bool {
+		_, err := split(row[column])
+		return err != ""
+	})
+}
+
 func printTable(w io.Writer, s Style, t textTable) {
 	g := newGrid(t.Title, append([]string{}, t.Head...)...)
 	if t.Remark {

@@ -6,6 +6,8 @@ import (
 	"cedewright/cmd/internal/study"
 	"cedewright/market"
 	"cedewright/optimize"
+	"cedewright/portfolio/capital"
+	"cedewright/portfolio/sample"
 	"cedewright/portfolio/treaty"
 )
 
@@ -50,12 +52,13 @@ func (s sketch) appraisal() optimize.Appraisal {
 	}
 	a.Capital = []optimize.CapitalFigure{
 		{Standard: "one-year", Gross: est(grossOneYear, 11e6), Net: s.net, Relief: relief(grossOneYear, s.net)},
-		{Standard: "tail", Gross: est(grossTail, 11e6), Net: s.tail, Relief: relief(grossTail, s.tail)},
+		{Standard: "tail", Gross: est(grossTail, 11e6), Net: s.tail, Relief: relief(grossTail, s.tail), Binding: true},
 	}
+	a.Driving = a.Capital[0]
 	a.OwnFundsRatio = []optimize.Estimate{est(ownFunds/s.net.Value, 0.04), est(ownFunds/s.tail.Value, 0.019)}
 	a.CapitalCost = est(0.09*s.net.Value, 0.09*s.net.StandardError)
 	a.TotalCost = est(a.CededMargin.Value+a.CapitalCost.Value, 0.6e6)
-	if r := a.Capital[0].Relief.Value; r > 0 {
+	if r := a.Driving.Relief.Value; r > 0 {
 		a.Rent, a.RentDefined = est(a.CededMargin.Value/r, 0.005), true
 	}
 	a.MarginPriceError, a.CostPriceError = 0.031*a.CededMargin.Value, 0.033*a.CededMargin.Value
@@ -136,10 +139,24 @@ func marramHead() study.Head {
 	}
 }
 
+func marramStandards() []capital.Standard {
+	level := func(text string) sample.Level {
+		l, err := sample.ParseLevel(text)
+		if err != nil {
+			panic(err)
+		}
+		return l
+	}
+	return []capital.Standard{
+		capital.Single("one-year", capital.ValueAtRisk, level("99.5%"), capital.Result, "Directive 2009/138/EC, Art. 101(3)"),
+		capital.Single("tail", capital.TailValueAtRisk, level("99%"), capital.Deviation, "set in the study"),
+	}
+}
+
 func marramAppraised() study.Appraised {
 	none, expiring, higher, _ := marramProgrammes()
 	return study.Appraised{
-		Head: marramHead(), CostOfCapital: 0.09, OwnFunds: ownFunds,
+		Head: marramHead(), CostOfCapital: 0.09, OwnFunds: ownFunds, Standards: marramStandards(), Drive: []string{"one-year"},
 		Gross:      study.GrossFigures{Premium: 900e6, Expenses: 265e6, Loss: est(553.8e6, 0.3e6), Capital: none.Capital, Result: none.NetResult},
 		Programmes: []optimize.Appraisal{none, expiring, higher},
 		Differences: []study.Difference{
@@ -155,7 +172,7 @@ func marramSearched() study.Searched {
 	s.Programmes = append(s.Programmes, best)
 	s.Differences = append(s.Differences, study.Difference{Programme: "best found", Against: "expiring", TotalCost: est(best.TotalCost.Value-expiring.TotalCost.Value, 0.3e6)})
 	s.Result = optimize.Result{Best: best, Feasible: true, Evaluations: 12951, Generations: 136, Seed: 1, Status: optimize.Settled, Polished: true, SpaceSize: 6.9e16}
-	s.Bound = optimize.Bound{TotalCost: 21.4e6, Certified: true, Reason: "no contract priced at the curves or above can come"}
+	s.Bound = optimize.Bound{Known: true, TotalCost: 21.4e6, Certified: true, Reason: "no contract priced at the curves or above can come"}
 	for i := range 14 {
 		scale := 0.3 + 0.07*float64(i)
 		p := sketch{name: "frontier", net: est(grossOneYear-96e6*math.Sqrt(scale), 7e6), tail: est(grossTail-120e6*scale, 9e6), oneIn10: -5e6, sd: 80e6, treaties: []optimize.TreatyFigure{

@@ -39,6 +39,11 @@ func goldens() map[string]func(io.Writer) error {
 		"report.html":         func(w io.Writer) error { return Paper(w, s, marramRun) },
 		"frontier.csv":        func(w io.Writer) error { return FrontierCSV(w, s) },
 	}
+	company := companySearched()
+	files["appraise-company.txt"] = text(func(w io.Writer) { PrintAppraised(w, company.Appraised, Style{Width: 110}) })
+	files["search-company.txt"] = text(func(w io.Writer) { PrintSearched(w, company, Style{Width: 110}) })
+	files["appraise-company.json"] = func(w io.Writer) error { return AppraisedJSON(w, companyAppraised()) }
+	files["report-company.html"] = func(w io.Writer) error { return Paper(w, company, marramRun) }
 	for _, picture := range CurvePictures(s.Curves) {
 		if strings.HasSuffix(picture.Name, ".svg") { // a PNG has no lines to compare; see TestCurvePNG
 			files[picture.Name] = picture.Write

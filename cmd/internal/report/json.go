@@ -32,17 +32,17 @@ func SearchedJSON(w io.Writer, s study.Searched, run []Setting) error {
 	return write(w, o)
 }
 
-// bound says below which total cost no programme of the space lies, when that is known.
-// bound gives the total cost that nothing can come below: that of the best when every programme was appraised, else that of thin layers if certified.
+// bound gives the total cost that nothing can come below: that of the best when every programme was appraised, else that of thin layers if one is known and
+// certified.
 func bound(s study.Searched) object {
 	if s.Result.Status == optimize.Proven && s.Result.Feasible {
 		return object{{"total_cost", number(s.Result.Best.TotalCost.Value)}, {"certified", true}, {"reason", s.Result.Status.String()}}
 	}
-	least := none
-	if s.Bound.Certified {
+	least, certified := none, s.Bound.Known && s.Bound.Certified
+	if certified {
 		least = number(s.Bound.TotalCost)
 	}
-	return object{{"total_cost", least}, {"certified", s.Bound.Certified}, {"reason", s.Bound.Reason}}
+	return object{{"total_cost", least}, {"certified", certified}, {"reason", s.Bound.Reason}}
 }
 
 func keepJSON(k optimize.Keep) object {
@@ -69,7 +69,7 @@ func exceedance(e study.ExceedanceCurves) object {
 
 func appraised(a study.Appraised) object {
 	return object{
-		{"cost_of_capital", number(a.CostOfCapital)}, {"own_funds", number(a.OwnFunds)},
+		{"cost_of_capital", costOfCapital(a)}, {"own_funds", number(a.OwnFunds)},
 		{"gross", object{
 			{"premium", number(a.Gross.Premium)}, {"expenses", number(a.Gross.Expenses)}, {"expected_loss", number(a.Gross.Loss.Value)},
 			{"standard_errors", object{{"expected_loss", number(a.Gross.Loss.StandardError)}}},
@@ -81,14 +81,7 @@ func appraised(a study.Appraised) object {
 		{"differences", objects(a.Differences, func(d study.Difference) object {
 			return object{{"programme", d.Programme}, {"against", d.Against}, {"total_cost", number(d.TotalCost.Value)}, {"standard_error", number(d.TotalCost.StandardError)}, {"error_from_quotes", number(d.Prices)}}
 		})},
-	}
-}
-
-func capitalJSON(c optimize.CapitalFigure) object {
-	return object{
-		{"standard", c.Standard}, {"gross", number(c.Gross.Value)}, {"net", number(c.Net.Value)}, {"relief", number(c.Relief.Value)},
-		{"standard_error", number(c.Net.StandardError)},
-		{"standard_errors", object{{"gross", number(c.Gross.StandardError)}, {"net", number(c.Net.StandardError)}, {"relief", number(c.Relief.StandardError)}}},
+		{"standards", standardsJSON(a)}, {"drive", texts(a.Drive)}, {"owners", ownersJSON(a)}, {"rest", restJSON(a.Rest)}, {"security", securityJSON(a)},
 	}
 }
 
@@ -112,12 +105,14 @@ func programme(a optimize.Appraisal) object {
 	return object{
 		{"name", a.Programme.Name}, {"ceded_premium", number(a.CededPremium.Value)}, {"expected_recoveries", number(a.ExpectedRecoveries.Value)},
 		{"reinstatement_premium", number(a.ReinstatementPremium.Value)}, {"commission", number(a.Commission.Value)},
-		{"ceded_margin", number(a.CededMargin.Value)}, {"capital", objects(a.Capital, capitalJSON)}, {"capital_cost", number(a.CapitalCost.Value)},
+		{"ceded_margin", number(a.CededMargin.Value)}, {"expected_unpaid", number(a.ExpectedUnpaid.Value)},
+		{"capital", objects(a.Capital, capitalJSON)}, {"driving", capitalJSON(a.Driving)}, {"capital_cost", number(a.CapitalCost.Value)},
+		{"capital_cost_rate", number(a.CapitalCost.Value / a.Driving.Net.Value)},
 		{"total_cost", number(a.TotalCost.Value)}, {"rent", rent}, {"own_funds_ratio", ratios}, {"net_result", resultJSON(a.NetResult)},
 		{"standard_errors", object{
 			{"ceded_premium", number(a.CededPremium.StandardError)}, {"expected_recoveries", number(a.ExpectedRecoveries.StandardError)},
 			{"reinstatement_premium", number(a.ReinstatementPremium.StandardError)}, {"commission", number(a.Commission.StandardError)},
-			{"ceded_margin", number(a.CededMargin.StandardError)}, {"capital_cost", number(a.CapitalCost.StandardError)},
+			{"ceded_margin", number(a.CededMargin.StandardError)}, {"expected_unpaid", number(a.ExpectedUnpaid.StandardError)}, {"capital_cost", number(a.CapitalCost.StandardError)},
 			{"total_cost", number(a.TotalCost.StandardError)}, {"rent", rentError},
 		}},
 		{"errors_from_quotes", object{{"ceded_margin", number(a.MarginPriceError)}, {"total_cost", number(a.CostPriceError)}}},
@@ -150,11 +145,15 @@ func treatyJSON(f optimize.TreatyFigure) object {
 		{"priced_by", f.PricedBy}, {"reliance", reliance}, {"error_from_quotes", number(f.PriceError)}, {"premium", number(f.Premium.Value)}, {"base_premium", number(f.BasePremium)}, {"rate_on_line", number(f.RateOnLine)},
 		{"reinstatement_premium", number(f.ReinstatementPremium.Value)}, {"commission", number(f.Commission)}, {"expected_recovery", number(f.ExpectedRecovery.Value)},
 		{"attachment_probability", number(f.AttachmentProbability.Value)}, {"exhaustion_probability", number(f.ExhaustionProbability.Value)},
-		{"margin", number(f.Margin.Value)}, {"relief", number(f.Relief.Value)},
+		{"margin", number(f.Margin.Value)}, {"relief", number(f.Relief.Value)}, {"expected_unpaid", number(f.ExpectedUnpaid.Value)},
+		{"panel", objects(t.Panel, func(l treaty.Line) object {
+			return object{{"reinsurer", l.Reinsurer}, {"share", number(l.Share)}, {"collateral", number(l.Collateral)}}
+		})},
 		{"standard_errors", object{
 			{"premium", number(f.Premium.StandardError)}, {"reinstatement_premium", number(f.ReinstatementPremium.StandardError)},
 			{"expected_recovery", number(f.ExpectedRecovery.StandardError)}, {"attachment_probability", number(f.AttachmentProbability.StandardError)},
 			{"exhaustion_probability", number(f.ExhaustionProbability.StandardError)}, {"margin", number(f.Margin.StandardError)}, {"relief", number(f.Relief.StandardError)},
+			{"expected_unpaid", number(f.ExpectedUnpaid.StandardError)},
 		}},
 	}...)
 }

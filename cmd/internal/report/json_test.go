@@ -12,6 +12,7 @@ import (
 
 	"cedewright/cmd/internal/study"
 	"cedewright/optimize"
+	"cedewright/portfolio/capital"
 	"cedewright/portfolio/treaty"
 )
 
@@ -39,9 +40,9 @@ func TestJSONOfOddResults(t *testing.T) {
 	}
 }
 
-// spoil makes every float of a result NaN or infinite, but not the terms of treaties, which are checked before anything is computed.
+// spoil makes every float of a result NaN or infinite, but not the terms of treaties and the rules of standards, which are checked before anything is computed.
 func spoil(v reflect.Value, with float64) {
-	if v.Type() == reflect.TypeFor[treaty.Treaty]() {
+	if v.Type() == reflect.TypeFor[treaty.Treaty]() || v.Type() == reflect.TypeFor[capital.Standard]() {
 		return
 	}
 	switch v.Kind() {
@@ -52,6 +53,10 @@ func spoil(v reflect.Value, with float64) {
 			if v.Field(i).CanSet() {
 				spoil(v.Field(i), with)
 			}
+		}
+	case reflect.Pointer:
+		if !v.IsNil() && v.Type() == reflect.TypeFor[*optimize.Alone]() {
+			spoil(v.Elem(), with)
 		}
 	case reflect.Slice, reflect.Array:
 		for i := range v.Len() {
@@ -64,9 +69,12 @@ func TestNoFigureBreaksTheDocument(t *testing.T) {
 	for _, bad := range []float64{math.NaN(), math.Inf(1), math.Inf(-1)} {
 		l := marramLook()
 		spoil(reflect.ValueOf(&l).Elem(), bad)
-		a := marramAppraised()
+		a, company := marramAppraised(), companyAppraised()
 		spoil(reflect.ValueOf(&a).Elem(), bad)
-		for _, build := range []func(io.Writer) error{func(w io.Writer) error { return LookJSON(w, l) }, func(w io.Writer) error { return AppraisedJSON(w, a) }} {
+		spoil(reflect.ValueOf(&company).Elem(), bad)
+		for _, build := range []func(io.Writer) error{
+			func(w io.Writer) error { return LookJSON(w, l) }, func(w io.Writer) error { return AppraisedJSON(w, a) }, func(w io.Writer) error { return AppraisedJSON(w, company) },
+		} {
 			var b bytes.Buffer
 			if err := build(&b); err != nil || !json.Valid(b.Bytes()) {
 				t.Errorf("%v: %v", bad, err)
@@ -75,6 +83,7 @@ func TestNoFigureBreaksTheDocument(t *testing.T) {
 		var text bytes.Buffer
 		PrintLook(&text, l, Style{})
 		PrintAppraised(&text, a, Style{})
+		PrintAppraised(&text, company, Style{})
 		if s := text.String(); strings.Contains(s, "NaN") || strings.Contains(s, "Inf") {
 			t.Errorf("the text holds %v:\n%s", bad, s)
 		}
@@ -151,13 +160,20 @@ func uniqueKeys(d *json.Decoder) error {
 
 func TestBound(t *testing.T) {
 	s := marramSearched()
-	s.Bound = optimize.Bound{TotalCost: 12, Reason: "a reason"}
+	s.Bound = optimize.Bound{Known: true, TotalCost: 12, Reason: "a reason"}
 	if b := bound(s); !math.IsNaN(float64(b[0].value.(number))) || b[1].value.(bool) || b[2].value.(string) != "a reason" {
 		t.Errorf("a bound that is not certified: %v", b)
 	}
 	s.Bound.Certified = true
 	if b := bound(s); float64(b[0].value.(number)) != 12 || !b[1].value.(bool) {
 		t.Errorf("a certified bound: %v", b)
+	}
+	s.Bound.Known = false
+	if b := bound(s); !math.IsNaN(float64(b[0].value.(number))) || b[1].value.(bool) {
+		t.Errorf("a bound that is not known: %v", b)
+	}
+	if text := boundWords(s); text != "No lower bound is known: a reason." {
+		t.Errorf("a bound that is not known: %q", text)
 	}
 	s.Result.Status = optimize.Proven
 	if b := bound(s); float64(b[0].value.(number)) != s.Result.Best.TotalCost.Value {

@@ -73,6 +73,13 @@ type paperView struct {
 	PricePictures                                template.HTML
 	Allocation                                   []textTable
 	AllocationWords                              string
+	Relief                                       string // what a treaty's relief is
+	OwnCapital                                   bool   // the frontier shows what own capital costs
+	Parts                                        []textTable
+	PartsWords                                   string
+	Standards                                    []string
+	Reinsurers                                   []textTable
+	Security                                     string
 	Curves                                       []curveSection
 	Keep, Warnings, Notes, LeftOut               []string
 	Caution                                      string
@@ -100,8 +107,8 @@ func Paper(w io.Writer, s study.Searched, run []Setting) error {
 		Capital:    template.HTML(capitalPicture(s)),
 
 		FrontierTable: frontierTable(s), FrontierCount: Count(len(s.Result.Frontier), "programme", "programmes"),
-		QuotaShares: quotaShares(towers),
-		Keep:        keepWords(s.Keep), Warnings: s.Warnings, Notes: s.Notes, LeftOut: leftOut, Caution: Caution, Inputs: s.Inputs, Settings: run,
+		QuotaShares: quotaShares(towers), Relief: reliefWords(s.Appraised), OwnCapital: s.CostOfCapital > 0,
+		Keep: keepWords(s.Keep), Warnings: s.Warnings, Notes: s.Notes, LeftOut: leftOut(s.Appraised), Caution: Caution, Inputs: s.Inputs, Settings: run,
 	}
 	if s.Result.Status == optimize.Interrupted {
 		v.Interrupted = "The search was interrupted. What follows is the best that it had found until then."
@@ -118,8 +125,15 @@ func Paper(w io.Writer, s study.Searched, run []Setting) error {
 	}
 	prices := pricesOf(s.Appraised, s.Result.Best.Programme.Name)
 	v.Prices, v.PricePictures = priceTable(prices), pricePanels(prices, s.Currency)
-	if k, ok := allocationOf(s.Appraised, s.Result.Best.Programme.Name); ok {
-		v.Allocation, v.AllocationWords = allocationTables(k), allocationWords
+	if list := allocationsOf(s.Appraised, s.Result.Best.Programme.Name); len(list) > 0 {
+		v.AllocationWords = allocationWords(list...)
+		for _, k := range list {
+			v.Allocation = append(v.Allocation, allocationTables(k, flatRate(s.Appraised))...)
+		}
+	}
+	v.Parts, v.PartsWords, v.Standards = partsTables(s.Appraised, named), partsWords, standardsWords(s.Appraised)
+	if v.Reinsurers = reinsurerTables(s.Appraised, named); len(v.Reinsurers) > 0 {
+		v.Security = securityWords(s.Appraised)
 	}
 	for _, c := range s.Curves {
 		v.Curves = append(v.Curves, curveOf(c))
@@ -130,7 +144,7 @@ func Paper(w io.Writer, s study.Searched, run []Setting) error {
 	v.Run = [][2]string{
 		{"Search", strings.TrimPrefix(searchWords(s), "Searched: ") + " " + boundWords(s)},
 		{"Seeds", fmt.Sprintf("book %d, search %d", s.Head.Seed, s.Result.Seed)},
-		{"Cost of capital", fmt.Sprintf("%s a year on required capital under “%s”, which drives the search", Percent(s.CostOfCapital), clean(s.NoCover.Capital[0].Standard))},
+		costSetting(s.Appraised),
 		{"Program", Version()},
 	}
 	return paper.Execute(w, v)
@@ -151,9 +165,9 @@ func tiles(s study.Searched) []tile {
 	}
 	list := []tile{
 		cost,
-		{"Capital freed", Estimated(best.Capital[0].Relief), against(Estimated(start.Capital[0].Relief))},
+		{"Capital freed", Estimated(best.Driving.Relief), against(Estimated(start.Driving.Relief))},
 		{"Margin given a year", Estimated(best.CededMargin), against(Estimated(start.CededMargin))},
-		{"Rent of that capital", rent(best), fmt.Sprintf("own capital costs %s", Percent(s.CostOfCapital))},
+		{"Rent of that capital", rent(best), ownCapitalCosts(s)},
 	}
 	for i := range list {
 		list[i].Beside = unbroken(clean(list[i].Beside))
@@ -182,7 +196,7 @@ func treatiesOf(p optimize.Appraisal) treatyList {
 	t := treatyList{Name: clean(p.Programme.Name), Head: treatyHead}
 	u := unitOfTreaties(p)
 	for _, f := range p.Treaties {
-		t.Rows, t.Terms = append(t.Rows, treatyCells(f, u)), append(t.Terms, termsOf(f))
+		t.Rows, t.Terms = append(t.Rows, treatyCells(f, u)), append(t.Terms, unbroken(termsOf(f)))
 	}
 	return t
 }

@@ -27,6 +27,16 @@ func oddSearches() map[string]study.Searched {
 		all[name] = s
 	}
 	add("usual", func(*study.Searched) {})
+	all["company"] = companySearched()
+	flat := companySearched()
+	flat.Owners, flat.CostOfCapital, flat.Rest = "", 0.09, otherRisks
+	all["company, flat rate, rest as a capital figure"] = flat
+	add("one standard", func(s *study.Searched) {
+		s.Standards = s.Standards[:1]
+		for _, p := range append(append([]*optimize.Appraisal{&s.NoCover, &s.Start, &s.Result.Best}, pointers(s.Programmes)...), pointers(s.Result.Frontier)...) {
+			p.Capital, p.OwnFundsRatio = p.Capital[:1], p.OwnFundsRatio[:1]
+		}
+	})
 	add("empty frontier", func(s *study.Searched) { s.Result.Frontier = nil })
 	add("one programme on the frontier", func(s *study.Searched) { s.Result.Frontier = s.Result.Frontier[:1] })
 	add("two programmes on the frontier", func(s *study.Searched) { s.Result.Frontier = s.Result.Frontier[:2] })
@@ -42,7 +52,7 @@ func oddSearches() map[string]study.Searched {
 		*s = study.Searched{Start: empty, NoCover: empty, Result: optimize.Result{Best: empty}}
 	})
 	add("relief below zero, margin below zero", func(s *study.Searched) {
-		s.Start.Capital[0].Relief, s.Start.CededMargin, s.Start.RentDefined = est(-30e6, 4e6), est(-2e6, 1e5), false
+		s.Start.Driving.Relief, s.Start.CededMargin, s.Start.RentDefined = est(-30e6, 4e6), est(-2e6, 1e5), false
 	})
 	add("unlimited layer, overlapping layers, odd shares", func(s *study.Searched) {
 		s.Result.Best.Treaties[1].Terms.Limit = math.Inf(1)
@@ -53,7 +63,7 @@ func oddSearches() map[string]study.Searched {
 		s.Title, s.Currency, s.Space, s.Notes, s.Warnings = nasty, nasty, nasty, []string{nasty}, []string{nasty}
 		s.Start.Programme.Name, s.Programmes[1].Programme.Name = nasty, nasty
 		s.Inputs[0].Path, s.Curves[0].Curve.Name, s.Keep[0].Standard = nasty, nasty, nasty
-		s.Curve.Programmes[0], s.NoCover.Capital[0].Standard = nasty, nasty
+		s.Curve.Programmes[0], s.NoCover.Capital[0].Standard, s.Drive, s.Standards[0].Name, s.Standards[0].Source = nasty, nasty, []string{nasty}, nasty, nasty
 		for i := range s.Result.Best.Treaties {
 			f := &s.Result.Best.Treaties[i]
 			f.Terms.Name, f.Terms.Perils, f.Terms.Classes, f.PricedBy = nasty, []string{nasty}, []string{nasty}, nasty
@@ -64,7 +74,7 @@ func oddSearches() map[string]study.Searched {
 		nan := est(math.NaN(), math.NaN())
 		b := &s.Result.Best
 		b.CededPremium, b.CededMargin, b.TotalCost, b.Rent, b.NetResult.Mean, b.NetResult.StandardDeviation = nan, nan, est(1, math.Inf(1)), nan, nan, math.NaN()
-		b.Capital[0].Relief, b.Capital[0].Net = nan, est(math.Inf(1), 1)
+		b.Capital[0].Relief, b.Capital[0].Net, b.Driving.Relief = nan, est(math.Inf(1), 1), nan
 		for i := range b.Treaties {
 			b.Treaties[i].AttachmentProbability, b.Treaties[i].Premium, b.Treaties[i].RateOnLine = nan, nan, math.NaN()
 		}
@@ -72,6 +82,14 @@ func oddSearches() map[string]study.Searched {
 		q := &s.Curves[0].Chosen.Quotes[0]
 		q.Fitted, q.Residual, q.Multiple, q.LeftOut = math.NaN(), math.NaN(), math.Inf(1), math.NaN()
 	})
+	return all
+}
+
+func pointers(list []optimize.Appraisal) []*optimize.Appraisal {
+	var all []*optimize.Appraisal
+	for i := range list {
+		all = append(all, &list[i])
+	}
 	return all
 }
 

@@ -31,7 +31,7 @@ func frontierPicture(s study.Searched) string {
 	front, named := s.Result.Frontier, shownProgrammes(s)
 	left, right, bottom, top := 0.0, 0.0, 0.0, 0.0
 	for _, p := range append(append([]optimize.Appraisal{}, named...), front...) {
-		relief, margin := p.Capital[0].Relief, p.CededMargin
+		relief, margin := p.Driving.Relief, p.CededMargin
 		left, right = min(left, relief.Value-relief.StandardError), max(right, relief.Value+relief.StandardError)
 		bottom, top = min(bottom, margin.Value), max(top, margin.Value)
 	}
@@ -42,25 +42,25 @@ func frontierPicture(s study.Searched) string {
 		return 0
 	}
 	c := newChart(pictureWidth, 430, usual,
-		moneyAxis(downTo(left), upTo(right*1.02), "capital relief ("+clean(s.NoCover.Capital[0].Standard)+")", s.Currency),
+		moneyAxis(downTo(left), upTo(right*1.02), shortened("capital relief ("+driving(s.Appraised, false)+")", 700, labelSize), s.Currency),
 		moneyAxis(downTo(bottom), upTo(top*1.08), "ceded margin a year", s.Currency))
 	ray := c.ownCapital(s.CostOfCapital)
 	var xs, ys []float64
 	for _, p := range front {
-		xs, ys = append(xs, p.Capital[0].Relief.Value), append(ys, p.CededMargin.Value)
+		xs, ys = append(xs, p.Driving.Relief.Value), append(ys, p.CededMargin.Value)
 	}
 	if len(xs) > 1 {
 		c.curve("front", xs, ys)
 	}
 	for _, p := range front {
-		c.mark("front-point", "dot", p.Capital[0].Relief.Value, p.CededMargin.Value,
-			fmt.Sprintf("%s: relief %s, margin %s, rent %s", Count(len(p.Treaties), "treaty", "treaties"), Estimated(p.Capital[0].Relief), Estimated(p.CededMargin), rent(p)))
+		c.mark("front-point", "dot", p.Driving.Relief.Value, p.CededMargin.Value,
+			fmt.Sprintf("%s: relief %s, margin %s, rent %s", Count(len(p.Treaties), "treaty", "treaties"), Estimated(p.Driving.Relief), Estimated(p.CededMargin), rent(p)))
 	}
 	var labels []label
 	for i := len(named) - 1; i >= 0; i-- {
 		p := named[i]
 		class, shape := look(s, p.Programme.Name)
-		x, y := p.Capital[0].Relief, p.CededMargin
+		x, y := p.Driving.Relief, p.CededMargin
 		c.whiskers("whisker", x.Value, y.Value, x.StandardError, y.StandardError)
 		c.mark(class, shape, x.Value, y.Value, fmt.Sprintf("%s: relief %s, margin %s, rent %s", p.Programme.Name, Estimated(x), Estimated(y), rent(p)))
 		labels = append(labels, label{x: c.x.at(x.Value), y: c.y.at(y.Value), text: p.Programme.Name, class: "strong"})
@@ -70,9 +70,12 @@ func frontierPicture(s study.Searched) string {
 		labels = append(labels, label{x: c.x.at(xs[k]), y: c.y.at(ys[k]), text: "frontier", class: "main-text"})
 	}
 	c.labels(append(labels, ray...))
-	return c.svg("Least ceded margin for each capital relief",
-		fmt.Sprintf("%s on the frontier; the best found frees %s for a margin of %s a year. Below the dashed line relief costs less than own capital.",
-			Count(len(front), "programme", "programmes"), Estimated(s.Result.Best.Capital[0].Relief), Estimated(s.Result.Best.CededMargin)))
+	about := fmt.Sprintf("%s on the frontier; the best found frees %s for a margin of %s a year.", Count(len(front), "programme", "programmes"), Estimated(s.Result.Best.Driving.Relief),
+		Estimated(s.Result.Best.CededMargin))
+	if len(ray) > 0 {
+		about += " Below the dashed line relief costs less than own capital."
+	}
+	return c.svg("Least ceded margin for each capital relief", about)
 }
 
 // ownCapital shades where relief costs less than the cost of own capital and draws the border; it gives the border's label.
@@ -117,45 +120,6 @@ func exceedancePicture(s study.Searched) string {
 	c.labels(labels)
 	return c.svg("Loss of a year at return periods, gross and net of recoveries",
 		fmt.Sprintf("Once in %v years the gross loss exceeds %s. Premiums are left out.", e.ReturnPeriods[last], Money(e.Gross[last])))
-}
-
-// capitalPicture draws required capital by standard and programme, with own funds for comparison.
-func capitalPicture(s study.Searched) string {
-	named := shownProgrammes(s)
-	top := s.OwnFunds
-	for _, p := range named {
-		for _, f := range p.Capital {
-			top = max(top, f.Net.Value+f.Net.StandardError)
-		}
-	}
-	const bar, group = 22.0, 34.0
-	standards := named[0].Capital
-	height := float64(len(standards))*(group+bar*float64(len(named))) + 66
-	c := newChart(pictureWidth, height, frame{left: 150, right: 110, top: 12, bottom: 50}, moneyAxis(0, upTo(top*1.02), "required capital", s.Currency), axis{})
-	if s.OwnFunds > 0 {
-		c.line("own", c.x.at(s.OwnFunds), c.y.from, c.x.at(s.OwnFunds), c.y.to)
-		c.text("note warm-text", c.x.at(s.OwnFunds)+6, c.y.to+12, "start", "own funds "+Money(s.OwnFunds))
-	}
-	u := unitOfProgrammes(named)
-	y := c.y.to
-	for i, standard := range standards {
-		c.text("label strong", c.x.from, y+20, "start", "standard “"+shortened(standard.Standard, 400, labelSize)+"”")
-		y += group - 6
-		for _, p := range named {
-			class, _ := look(s, p.Programme.Name)
-			net := p.Capital[i].Net
-			c.text("tick", c.x.from-10, y+14, "end", shortened(p.Programme.Name, c.x.from-14, tickSize))
-			c.rectangle("bar-"+class, c.x.from, y+3, c.x.at(net.Value)-c.x.from, bar-7)
-			if known(net) {
-				middle := y + 3 + (bar-7)/2
-				c.line("whisker", c.x.at(net.Value-net.StandardError), middle, c.x.at(net.Value+net.StandardError), middle)
-			}
-			c.text("note", c.x.at(net.Value+max(net.StandardError, 0))+7, y+14, "start", u.estimate(net))
-			y += bar
-		}
-		y += 6
-	}
-	return c.svg("Required capital by standard", fmt.Sprintf("Bars for %s under %s, one standard error to each side.", Count(len(named), "programme", "programmes"), Count(len(standards), "standard", "standards")))
 }
 
 // CurvePictures gives a file for the picture of each curve.

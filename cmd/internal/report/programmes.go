@@ -30,13 +30,15 @@ func printFoot(w io.Writer, s Style, h study.Head) {
 func PrintAppraised(w io.Writer, a study.Appraised, s Style) {
 	printHead(w, s, a.Head, "Programmes side by side")
 	printSideBySide(w, s, a, a.Programmes, 0)
+	printStandards(w, s, a, a.Programmes)
+	printReinsurers(w, s, a, a.Programmes)
 	for i, p := range a.Programmes {
-		printTreaties(w, s, p)
+		printTreaties(w, s, a, p)
 		if i < len(a.Prices) && len(a.Prices[i]) > 0 {
 			printTable(w, s, priceTable(a.Prices[i]))
 		}
-		if k, ok := allocationOf(a, p.Programme.Name); ok && len(k.Treaties) > 0 {
-			printAllocation(w, s, k)
+		if k, ok := drivingAllocation(a, p.Programme.Name); ok && len(k.Treaties) > 0 {
+			printAllocation(w, s, k, flatRate(a))
 		}
 	}
 	printFoot(w, s, a.Head)
@@ -61,7 +63,7 @@ func printSideBySide(w io.Writer, s Style, a study.Appraised, all []optimize.App
 	g.print(w, s)
 }
 
-func printTreaties(w io.Writer, s Style, p optimize.Appraisal) {
+func printTreaties(w io.Writer, s Style, a study.Appraised, p optimize.Appraisal) {
 	if len(p.Treaties) == 0 {
 		return
 	}
@@ -74,15 +76,20 @@ func printTreaties(w io.Writer, s Style, p optimize.Appraisal) {
 	for _, f := range p.Treaties {
 		bullet(w, s, f.Terms.Name+": "+termsOf(f))
 	}
-	wrapped(w, "Rates are for 100 % of a treaty. Relief is last in: required capital without the treaty less with it, first standard.", "", s.width())
+	wrapped(w, "Rates are for 100 % of a treaty. "+reliefWords(a), "", s.width())
 	fmt.Fprintln(w)
 }
 
-func printAllocation(w io.Writer, s Style, a optimize.Allocation) {
-	for _, t := range allocationTables(a) {
+// reliefWords says what a treaty's relief is.
+func reliefWords(a study.Appraised) string {
+	return "Relief is last in: required capital without the treaty less with it, under " + driving(a, true) + "."
+}
+
+func printAllocation(w io.Writer, s Style, a optimize.Allocation, rate float64) {
+	for _, t := range allocationTables(a, rate) {
 		printTable(w, s, t)
 	}
-	wrapped(w, allocationWords, "", s.width())
+	wrapped(w, allocationWords(a), "", s.width())
 	fmt.Fprintln(w)
 }
 
@@ -93,7 +100,9 @@ func PrintSearched(w io.Writer, found study.Searched, s Style) {
 	fmt.Fprintln(w)
 	columns := shownProgrammes(found)
 	printSideBySide(w, s, found.Appraised, columns, len(columns))
-	printTreaties(w, s, found.Result.Best)
+	printStandards(w, s, found.Appraised, columns)
+	printReinsurers(w, s, found.Appraised, columns)
+	printTreaties(w, s, found.Appraised, found.Result.Best)
 	printFrontier(w, s, found)
 	wrapped(w, searchWords(found), "", s.width())
 	if text := boundWords(found); text != "" {
@@ -103,7 +112,7 @@ func PrintSearched(w io.Writer, found study.Searched, s Style) {
 		wrapped(w, "Kept: "+k+".", "", s.width())
 	}
 	fmt.Fprintln(w, "\n"+s.in(bold, "What the figures leave out"))
-	for _, text := range leftOut {
+	for _, text := range leftOut(found.Appraised) {
 		bullet(w, s, text)
 	}
 	fmt.Fprintln(w)
@@ -148,7 +157,7 @@ var frontierHead = []string{"relief", "ceded margin", "total cost", "rent", "ced
 
 // frontierCells gives the figures of frontierHead.
 func frontierCells(p optimize.Appraisal, u unit) []string {
-	return []string{u.estimate(p.Capital[0].Relief), u.estimate(p.CededMargin), u.estimate(p.TotalCost), rent(p), u.estimate(p.CededPremium), fmt.Sprint(len(p.Treaties))}
+	return []string{u.estimate(p.Driving.Relief), u.estimate(p.CededMargin), u.estimate(p.TotalCost), rent(p), u.estimate(p.CededPremium), fmt.Sprint(len(p.Treaties))}
 }
 
 func printFrontier(w io.Writer, s Style, found study.Searched) {
@@ -164,4 +173,6 @@ func printFrontier(w io.Writer, s Style, found study.Searched) {
 		g.add(frontierCells(front[i], u)...)
 	}
 	g.print(w, s)
+	wrapped(w, "Relief is that of required capital under "+driving(found.Appraised, true)+".", "", s.width())
+	fmt.Fprintln(w)
 }

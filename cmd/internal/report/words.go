@@ -15,16 +15,6 @@ import (
 const Caution = "A model result, not a regulatory filing and not advice. Its figures are to be reviewed by the responsible actuary; " +
 	"local regulation and the wording of the contracts prevail."
 
-// leftOut says what the figures do not contain.
-var leftOut = []string{
-	"Required capital is a measure of one year's simulated net result: other risks, taxes, investment results, the run-off of old reserves and the rules of a full regulatory formula are not in it.",
-	"Reinsurers are taken to pay in full and at once: neither default nor dispute nor delay is priced.",
-	"Market prices come from a curve fitted to quotes, or from quotes in the study; capacity, relationships and the wordings behind them are not modelled.",
-	"Reinstatement premiums are pro rata as to amount, without brokerage and without a time factor.",
-	"Standard errors (±) are those of the simulation alone; what few quotes leave open is shown beside them where it is known. Whether the models of loss and the kind of market curve are right neither says.",
-	"The best programme was chosen on the same simulated years on which its figures are shown, which flatters it a little.",
-}
-
 // Version names the program and the version from which it was built.
 func Version() string {
 	info, ok := debug.ReadBuildInfo()
@@ -62,9 +52,9 @@ func whatToBuy(s study.Searched) string {
 	}
 	text := fmt.Sprintf("%s “%s”: %s for %s %s of premium a year, which costs a margin of %s a year and frees %s of required capital (%s)",
 		verb, name, Count(len(best.Programme.Treaties), "treaty", "treaties"), s.Currency, Estimated(best.CededPremium), Estimated(best.CededMargin),
-		Estimated(best.Capital[0].Relief), best.Capital[0].Standard)
+		Estimated(best.Driving.Relief), driving(s.Appraised, false))
 	if best.RentDefined {
-		text += fmt.Sprintf(", a rent of %s against a cost of capital of %s", EstimatedPercent(best.Rent), Percent(s.CostOfCapital))
+		text += fmt.Sprintf(", a rent of %s against %s", EstimatedPercent(best.Rent), rentAgainst(s, best))
 	}
 	return clean(text) + "."
 }
@@ -72,7 +62,16 @@ func whatToBuy(s study.Searched) string {
 // whatItCosts compares total cost with the start and with no cover.
 func whatItCosts(s study.Searched) string {
 	best, start, none := s.Result.Best, s.Start, s.NoCover
-	text := fmt.Sprintf("Margin and cost of capital together are %s a year", Estimated(best.TotalCost))
+	parts := "Margin and cost of capital together"
+	switch {
+	case s.Security != nil && s.Owners != "":
+		parts = "Margin, unpaid recoveries and the owners' price of the risk kept together"
+	case s.Security != nil:
+		parts = "Margin, unpaid recoveries and cost of capital together"
+	case s.Owners != "":
+		parts = "Margin and the owners' price of the risk kept together"
+	}
+	text := fmt.Sprintf("%s are %s a year", parts, Estimated(best.TotalCost))
 	switch {
 	case len(best.Programme.Treaties) == 0:
 		text = fmt.Sprintf("That costs %s a year", Estimated(best.TotalCost))
@@ -120,6 +119,9 @@ func searchWords(s study.Searched) string {
 func boundWords(s study.Searched) string {
 	if s.Result.Status == optimize.Proven || !s.Result.Feasible {
 		return ""
+	}
+	if !s.Bound.Known {
+		return "No lower bound is known: " + clean(s.Bound.Reason) + "."
 	}
 	if !s.Bound.Certified {
 		return "How far from the best possible it can be is not known: " + clean(s.Bound.Reason) + "."

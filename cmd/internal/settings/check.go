@@ -11,12 +11,13 @@ import (
 // checker collects what the keys of a study say against one another. What follows from a fault of decoding is left out: a rule about keys
 // of which one could not be read says nothing new.
 type checker struct {
-	s         Study
-	d         *decoder
-	classes   names
-	curves    names
-	standards names
-	perilsOf  names // perils of the book; broken when only its tables can tell them
+	s          Study
+	d          *decoder
+	classes    names
+	curves     names
+	standards  names
+	reinsurers names
+	perilsOf   names // perils of the book; broken when only its tables can tell them
 }
 
 // mostBroken bounds the keys with a fault beyond which rules are no longer looked at.
@@ -31,12 +32,16 @@ func (s Study) check(d *decoder) {
 	c.classes = c.names("book.classes", len(s.Book.Classes), func(i int) string { return s.Book.Classes[i].Name })
 	c.curves = c.names("market.curves", len(s.Market.Curves), func(i int) string { return s.Market.Curves[i].Name })
 	c.standards = c.names("capital.standards", len(s.Capital.Standards), func(i int) string { return s.Capital.Standards[i].Name })
+	if s.Security != nil {
+		c.reinsurers = c.names("security.reinsurers", len(s.Security.Reinsurers), func(i int) string { return s.Security.Reinsurers[i].Name })
+	}
 	perils, ok := s.perils()
 	c.perilsOf = names{list: perils, has: set(perils), broken: !ok || c.broken("book")}
 	c.book()
 	c.market()
 	c.programmes()
 	c.capital()
+	c.security()
 	if s.Search != nil {
 		c.search(*s.Search)
 	}

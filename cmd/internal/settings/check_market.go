@@ -137,6 +137,9 @@ func (c *checker) ownQuote(key string, q OwnQuote) {
 	if q.Line != "" {
 		c.word(key+".line", "kind of line", q.Line, []string{"lead", "following"})
 	}
+	if q.Panel != nil {
+		c.add(key+".panel", "given for a quote", "a panel of treaties: a quote is for the layer, whoever writes it")
+	}
 	if len(q.After) > 0 {
 		c.add(key+".after", "given for a quote", "no treaty: the quoted layer is looked at on the gross losses")
 	}

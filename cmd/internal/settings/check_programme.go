@@ -4,7 +4,6 @@ import (
 	"fmt"
 	"strings"
 
-	"cedewright/portfolio/capital"
 	"cedewright/portfolio/fault"
 	"cedewright/portfolio/treaty"
 )
@@ -28,6 +27,7 @@ func (c *checker) programmes() {
 			at := fmt.Sprintf("%s.treaties[%d]", key, j)
 			c.treaty(at, t)
 			c.subject(at, t)
+			c.panel(at+".panel", t.Panel)
 			for k, name := range t.After {
 				c.known(fmt.Sprintf("%s.after[%d]", at, k), "treaty of the programme", name, treaties)
 			}
@@ -134,29 +134,5 @@ func (c *checker) treaty(key string, t Treaty) {
 		if !missing[f.Key] && f.Key != "name" {
 			c.take(placed(*f, key+"."+f.Key))
 		}
-	}
-}
-
-func (c *checker) capital() {
-	k := c.s.Capital
-	c.fraction("capital.cost", k.Cost)
-	if k.OwnFunds != nil {
-		c.moneyAbove("capital.own_funds", *k.OwnFunds)
-	}
-	if len(k.Standards) == 0 {
-		c.add("capital.standards", "no standard", "at least one")
-	}
-	var presets []string
-	for _, p := range capital.Presets() {
-		presets = append(presets, p.Name)
-	}
-	for i, s := range k.Standards {
-		key := fmt.Sprintf("capital.standards[%d]", i)
-		c.word(key+".preset", "preset", s.Preset, presets)
-		if s.Preset == "" && (s.Measure == "" || s.Level == nil) {
-			c.add(key, "no preset, and measure or level missing", fmt.Sprintf("one of the presets %q, or measure and level", presets))
-		}
-		c.word(key+".measure", "measure", s.Measure, capital.MeasureNames())
-		c.word(key+".basis", "basis", s.Basis, capital.BasisNames())
 	}
 }

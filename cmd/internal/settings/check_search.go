@@ -124,6 +124,10 @@ func (c *checker) tower(key string, t Tower, start Programme) {
 	}
 	kinds := []string{treaty.EventExcess.String(), treaty.RiskExcess.String()}
 	c.word(key+".kind", "kind of a tower", t.Kind, kinds)
+	c.panel(key+".panel", t.Panel)
+	for _, f := range fault.All(treaty.Treaty{Name: "x", Kind: treaty.QuotaShare, Panel: panel(t.Panel)}.Validate()) {
+		c.take(placed(*f, key+"."+f.Key))
+	}
 	if t.AnnualDeductible != nil {
 		c.money(key+".annual_deductible", *t.AnnualDeductible)
 	}

@@ -6,7 +6,6 @@ import (
 
 	"cedewright/market"
 	"cedewright/optimize"
-	"cedewright/portfolio/capital"
 	"cedewright/portfolio/fault"
 	"cedewright/portfolio/loss"
 	"cedewright/portfolio/treaty"
@@ -46,6 +45,7 @@ func (t Treaty) Terms() treaty.Treaty {
 	if t.Premium != nil {
 		terms.Premium = treaty.Some(float64(*t.Premium))
 	}
+	terms.Panel = panel(t.Panel)
 	if t.Reinstatements != nil {
 		terms.Reinstatements = make([]float64, len(t.Reinstatements))
 		for i, charge := range t.Reinstatements {
@@ -190,29 +190,6 @@ func (s Severity) law() (loss.Severity, error) {
 	return nil, unknownFamily(s.Family, SeverityFamilies())
 }
 
-// Rule gives the standard that the keys describe. Its source is the preset's as long as nothing beside the preset changes it.
-func (s Standard) Rule() capital.Standard {
-	rule := capital.Standard{Basis: capital.Result, Source: "set in the study"}
-	preset, ok := capital.Preset(s.Preset)
-	if ok {
-		rule = preset
-	}
-	if m, err := capital.ParseMeasure(s.Measure); err == nil {
-		rule.Measure = m
-	}
-	if b, err := capital.ParseBasis(s.Basis); err == nil {
-		rule.Basis = b
-	}
-	if s.Level != nil {
-		rule.Level = s.Level.Level
-	}
-	if ok && rule != preset {
-		rule.Source = "set in the study, from the preset " + preset.Name
-	}
-	rule.Name = s.Name
-	return rule
-}
-
 // Matrix gives the correlation matrix of the attritional losses, in their order.
 func (a Attritional) Matrix() [][]float64 {
 	n := len(a.Losses)
@@ -274,7 +251,7 @@ func (s Study) Space() (optimize.Space, error) {
 	space := optimize.Space{Start: treaty.Programme{Name: NoCover}}
 	for _, p := range s.Programmes {
 		if p.Name == s.Search.From || s.Search.From == "" && space.Start.Name == NoCover {
-			space.Start = p.Terms()
+			space.Start = s.Terms(p)
 		}
 	}
 	for _, v := range s.Search.Vary {
@@ -284,7 +261,9 @@ func (s Study) Space() (optimize.Space, error) {
 		})
 	}
 	for _, t := range s.Search.towers() {
-		space.Towers = append(space.Towers, t.tower.space())
+		tower := t.tower.space()
+		tower.Template.Panel = s.panelOr(t.tower.Panel)
+		space.Towers = append(space.Towers, tower)
 	}
 	for _, k := range s.Search.Keep {
 		keep := optimize.Keep{Measure: k.Measure, Standard: k.Standard}

@@ -85,15 +85,18 @@ func nearestFile(path string) string {
 
 // checkFiles reports the files that the study names but that are not there.
 func (s Study) checkFiles(faults *fault.List) {
-	check := func(key, file string) {
+	check := func(key, file string, known ...string) { // known names serve in place of a file
 		if file == "" {
 			return
 		}
 		path := s.Path(file)
 		f := fault.Fault{Key: key, Allowed: "the path of a file, from the folder of the study"}
+		if len(known) > 0 {
+			f.Allowed = fmt.Sprintf("%q, or %s", known, f.Allowed)
+		}
 		switch info, err := os.Stat(path); {
 		case errors.Is(err, os.ErrNotExist):
-			f.Found, f.Nearest = "no file "+quoted(path), nearestFile(path)
+			f.Found, f.Nearest = "no file "+quoted(path), cmp.Or(fault.Nearest(file, known), nearestFile(path))
 		case err != nil:
 			f.Found, f.Err = quoted(path)+" cannot be read", unwrapPath(err)
 		case info.IsDir():
@@ -109,6 +112,14 @@ func (s Study) checkFiles(faults *fault.List) {
 	for i, m := range s.Book.Models {
 		if m.History != nil {
 			check(fmt.Sprintf("book.models[%d].history.file", i), m.History.File)
+		}
+	}
+	for i, k := range s.Capital.Standards {
+		if k.Formula == nil {
+			continue
+		}
+		if _, ships := ShippedFactors(k.Formula.Factors); !ships {
+			check(fmt.Sprintf("capital.standards[%d].formula.factors", i), k.Formula.Factors, ShippedFactorNames()...)
 		}
 	}
 	for i, c := range s.Market.Curves {

@@ -9,6 +9,7 @@ type Study struct {
 	Market     Market      `key:"market"`
 	Programmes []Programme `key:"programmes"`
 	Capital    Capital     `key:"capital,required"`
+	Security   *Security   `key:"security"`
 	Search     *Search     `key:"search"`
 
 	File   string           `key:"-"` // as given
@@ -191,22 +192,7 @@ type Treaty struct {
 	EventLimit       *Money     `key:"event_limit"`
 	Premium          *Money     `key:"premium"`
 	Curve            string     `key:"curve"`
-}
-
-// Capital is the section of standards and what capital costs.
-type Capital struct {
-	Cost      Fraction   `key:"cost,required"`
-	OwnFunds  *Money     `key:"own_funds"`
-	Standards []Standard `key:"standards,required"`
-}
-
-// Standard is a preset, or a measure with level and basis; what is given beside a preset overrides it.
-type Standard struct {
-	Name    string `key:"name,required"`
-	Preset  string `key:"preset"`
-	Measure string `key:"measure"`
-	Level   *Level `key:"level"`
-	Basis   string `key:"basis"`
+	Panel            []Line     `key:"panel"`
 }
 
 // Search is the section of what may be chosen.
@@ -273,6 +259,7 @@ type Tower struct {
 	EventLimit       *Money         `key:"event_limit"`
 	Reinstatements   *CountRange    `key:"reinstatements"`
 	Curve            string         `key:"curve,required"`
+	Panel            []Line         `key:"panel"`
 }
 
 // Keep is a constraint on a measure of the appraisal.

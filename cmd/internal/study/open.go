@@ -264,7 +264,7 @@ func (s *Study) loadProgrammes() error {
 	var faults fault.List
 	table := s.book.Table
 	for i, p := range s.settings.Programmes {
-		programme := p.Terms()
+		programme := s.settings.Terms(p)
 		for _, f := range fault.All(programme.Validate(table.Classes(), table.Perils())) {
 			f.Key = fmt.Sprintf("programmes[%d].%s", i, f.Key)
 			faults.Add(s.settings.At(*f))
@@ -294,25 +294,4 @@ func (s *Study) loadProgrammes() error {
 		}
 	}
 	return faults.Err()
-}
-
-func (s *Study) prepare() error {
-	for _, k := range s.settings.Capital.Standards {
-		s.standards = append(s.standards, k.Rule())
-	}
-	c := optimize.Case{Book: s.book, Standards: s.standards, CostOfCapital: float64(s.settings.Capital.Cost)}
-	if s.settings.Capital.OwnFunds != nil {
-		c.OwnFunds = float64(*s.settings.Capital.OwnFunds)
-	}
-	for _, curve := range s.curves {
-		c.Curves = append(c.Curves, curve.Curve)
-	}
-	for _, k := range s.standards {
-		if beyond := float64(s.head.Years) * k.Level.Tail(); beyond < 10 {
-			s.head.Warnings = append(s.head.Warnings, fmt.Sprintf("Standard %s: only %.3g simulated years lie beyond its level of %s; its figures rest on too little.", k.Name, beyond, k.Level))
-		}
-	}
-	var err error
-	s.appraiser, err = optimize.NewAppraiser(c)
-	return err
 }

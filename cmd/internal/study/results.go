@@ -3,6 +3,8 @@ package study
 import (
 	"cedewright/market"
 	"cedewright/optimize"
+	"cedewright/portfolio/capital"
+	"cedewright/portfolio/security"
 )
 
 // Head is what every result says about where it comes from.
@@ -100,12 +102,17 @@ type Fitted struct {
 // Appraised is the answer of the verb appraise: no cover first, then the programmes in the order of the study.
 type Appraised struct {
 	Head
-	CostOfCapital float64
-	OwnFunds      float64
+	CostOfCapital float64            // flat rate per year; 0 when the owners price the risk they keep by a distortion
+	Owners        string             // their distortion in words; "" = the flat rate
+	OwnFunds      float64            // money; 0 = not given
+	Standards     []capital.Standard // in the order of the capital figures
+	Drive         []string           // names of the standards of which the one that asks the most drives
+	Rest          *capital.Rest      // of the company; nil = none
+	Security      *security.Register // reinsurers behind the treaties; nil = none
 	Gross         GrossFigures
 	Programmes    []optimize.Appraisal        // first is "no cover"
 	Prices        [][]optimize.ExplainedPrice // of each programme, in the same order
-	Allocations   []optimize.Allocation       // likewise
+	Allocations   [][]optimize.Allocation     // likewise, by standard
 	Differences   []Difference                // of every later programme to the first named "expiring" or, without one, to no cover
 }
 

@@ -11,6 +11,7 @@ import (
 	"strings"
 	"testing"
 
+	"cedewright/cmd/internal/settings"
 	"cedewright/market"
 )
 
@@ -59,8 +60,14 @@ wind,0.01,0.004,0.0065,0.022
 // open writes a study with that market section beside its quotes and opens it.
 func open(t *testing.T, section string, o Options) (*Study, error) {
 	t.Helper()
+	return openText(t, fmt.Sprintf(base, section), "", o)
+}
+
+// openText writes a study beside its quotes and, if there are any, factors of its own, and opens it.
+func openText(t *testing.T, study, factors string, o Options) (*Study, error) {
+	t.Helper()
 	folder := t.TempDir()
-	for name, text := range map[string]string{"study.yaml": fmt.Sprintf(base, section), "quotes.csv": quotes} {
+	for name, text := range map[string]string{"study.yaml": study, "quotes.csv": quotes, "factors.yaml": factors} {
 		if err := os.WriteFile(filepath.Join(folder, name), []byte(text), 0o600); err != nil {
 			t.Fatal(err)
 		}
@@ -252,5 +259,152 @@ func TestSearch(t *testing.T) {
 	look, err := s.Look(context.Background())
 	if err != nil || len(look.Classes) != 2 || len(look.Perils) != 2 || math.Abs(look.Total.Premium-100e6) > 1 {
 		t.Errorf("%+v, %v", look, err)
+	}
+}
+
+// company is a study with standards of every kind, whose classes stand in another order than the book's.
+func company() string {
+	text := fmt.Sprintf(base, wind)
+	head, rest, _ := strings.Cut(text, "capital:\n")
+	_, search, _ := strings.Cut(rest, "search:\n")
+	return head + `capital:
+  owners: {curve: wind}
+  own_funds: 400m
+  drive: [one-year, standard formula]
+  standards:
+    - {name: one-year, preset: eu-one-year}
+    - name: stress table
+      criteria:
+        - {measure: value-at-risk, level: 99.8%, ratio: 120%}
+        - {measure: tail-value-at-risk, level: 99%, basis: deviation}
+    - name: standard formula
+      formula:
+        factors: factors.yaml
+        classes:
+          - {class: motor, segment: 1, reserves: 30m}
+          - {class: home, segment: 4, reserves: 20m}
+        scenarios:
+          - {name: north, kind: windstorm, peril: storm, losses: [{class: home, loss: 90m}]}
+          - {name: south, kind: windstorm, peril: storm, losses: [{class: home, loss: 60m}]}
+          - {name: pile-up, kind: motor, losses: [{class: motor, loss: 20m}]}
+        correlations: [{between: [north, south], correlation: 25%}]
+        recoverables: [{reinsurer: Dune Re, amount: 10m}]
+    - name: shipped
+      formula: {factors: eu-2015-35, classes: [{class: home, segment: 4}, {class: motor, segment: 1}]}
+    - name: covariance
+      covariance: {charges: {r1: 5m}, perils: [storm], level: 1 in 500, contingent_credit: 4.8%}
+  rest: {family: lognormal, mean: 2m, sd: 10m, rank_correlation: 20%}
+security:
+  correlation: 30%
+  reinsurers:
+    - {name: Harbour Re, step: 4}
+    - {name: Dune Re, default_probability: 0.1%, tied_assets: true}
+    - {name: Gannet Re, solvency_ratio: 100%}
+  panel: [{reinsurer: Harbour Re, share: 60%, collateral: 1m}, {reinsurer: Dune Re, share: 40%}]
+search:
+` + search
+}
+
+// ownFactors are the shipped factors with another probability for step 4.
+func ownFactors(t *testing.T) string {
+	t.Helper()
+	shipped, ok := settings.ShippedFactors(settings.DefaultFactors)
+	text := strings.Replace(string(shipped), "0.24%, 1.2%, 4.2%, 4.2%]", "0.24%, 2%, 4.2%, 4.2%]", 1)
+	if !ok || text == string(shipped) {
+		t.Fatal("the shipped factors have other steps")
+	}
+	return text
+}
+
+// TestCompany opens a study of every kind of standard with a panel and a rest of the company, and appraises it.
+func TestCompany(t *testing.T) {
+	factors := ownFactors(t)
+	s, err := openText(t, company(), factors, Options{Workers: 2})
+	if err != nil {
+		t.Fatal(err)
+	}
+	c := s.appraiser.Case()
+	if c.Owners == nil || c.Owners != s.curves[0].Curve.Distortion || c.CostOfCapital != 0 {
+		t.Errorf("owners %v, not the curve's", c.Owners)
+	}
+	if want := []int{0, 2}; !slices.Equal(c.Drive, want) {
+		t.Errorf("standards %v drive, want %v", c.Drive, want)
+	}
+	if c.Rest == nil || c.Rest.Quantile == nil || c.Rest.Seed != 5 {
+		t.Errorf("rest %+v; its seed is that of the book", c.Rest)
+	}
+	// The first formula of the study rates reinsurers: its own factors, not those that ship.
+	if r := c.Security; len(r.Reinsurers) != 3 || r.Reinsurers[0].Default != 0.02 || r.Reinsurers[2].Default != 0.005 || r.Seed != 5 {
+		t.Errorf("register %+v", c.Security)
+	}
+	f := c.Standards[2].Formula
+	if f.Factors.Segments[f.Classes[0].Segment].Number != 4 || f.Factors.Segments[f.Classes[1].Segment].Number != 1 || f.Classes[0].Reserves != 20e6 {
+		t.Errorf("classes %+v are out of the order of the book", f.Classes)
+	}
+	if !slices.Equal(f.Default, []float64{0.02, 0.001, 0.005}) || !slices.Equal(f.Tied, []bool{false, true, false}) || !slices.Equal(f.Recoverables, []float64{0, 10e6, 0}) {
+		t.Errorf("probabilities %v, tied %v, recoverables %v", f.Default, f.Tied, f.Recoverables)
+	}
+	if i := slices.IndexFunc(s.head.Inputs, func(in Input) bool { return filepath.Base(in.Path) == "factors.yaml" }); i < 0 || s.head.Inputs[i].SHA256 != hash([]byte(factors)) {
+		t.Errorf("the factor file is not among the inputs with its hash: %+v", s.head.Inputs)
+	}
+	a, err := s.Appraise(context.Background())
+	if err != nil {
+		t.Fatal(err)
+	}
+	gross, net := a.Programmes[0], a.Programmes[1]
+	for i, k := range a.Standards {
+		if g, n := gross.Capital[i].Net.Value, net.Capital[i].Net.Value; !(g > 0 && n > 0 && n < g) {
+			t.Errorf("%s asks %v without cover, %v with", k.Name, g, n)
+		}
+	}
+	if net.ExpectedUnpaid.Value <= 0 || gross.ExpectedUnpaid.Value != 0 {
+		t.Errorf("unpaid %v with cover, %v without", net.ExpectedUnpaid.Value, gross.ExpectedUnpaid.Value)
+	}
+	if a.Owners == "" || !slices.Equal(a.Drive, []string{"one-year", "standard formula"}) {
+		t.Errorf("owners %q, drive %q", a.Owners, a.Drive)
+	}
+	for _, want := range []string{
+		"Standard stress table: only 6 simulated years lie beyond its level of 99.8%",
+		"Standard covariance: only 6 simulated years lie beyond its level of 99.8%",
+		`3 simulated years see reinsurer "Dune Re" fail`,
+	} {
+		if n := len(slices.DeleteFunc(slices.Clone(a.Warnings), func(w string) bool { return !strings.Contains(w, want) })); n != 1 {
+			t.Errorf("%d warnings with %q in %q", n, want, a.Warnings)
+		}
+	}
+	found, err := s.Search(context.Background(), SearchOptions{})
+	if err != nil {
+		t.Fatal(err)
+	}
+	for _, one := range found.Result.Best.Programme.Treaties {
+		if len(one.Panel) != 2 {
+			t.Errorf("the search drops the panel of %s: %+v", one.Name, one.Panel)
+		}
+	}
+}
+
+// TestCompanyFaults: what only the files that a study names can show is told with its place.
+func TestCompanyFaults(t *testing.T) {
+	for name, test := range map[string]struct{ from, to, factors, want string }{
+		"segment":     {"segment: 1, res", "segment: 13, res", "", "study.yaml:40:37: capital.standards[2].formula.classes[0].segment: no segment 13; allowed: 1 motor liability, 2 other motor, "},
+		"kind":        {"kind: motor", "kind: motro", "", `study.yaml:45:35: capital.standards[2].formula.scenarios[2].kind: no kind of scenario here is named "motro"; allowed: ["windstorm" "earthquake" "flood" "hail" "subsidence" "fire" "motor" "marine" "aviation" "liability" "credit"]; did you mean "motor"?`},
+		"correlation": {"correlation: 25%}]", "correlation: 25%}, {between: [south, north], correlation: 25%}]", "", `study.yaml:46:79: capital.standards[2].formula.correlations[1].between: "north" and "south" twice; allowed: each pair once`},
+		"factors":     {"", "", "name: mine\n", "factors.yaml:1:1: segments: the key is missing"},
+		"file":        {"factors: factors.yaml", "factors: factors.yml", "", `capital.standards[2].formula.factors: no file "`},
+		"folder":      {"factors: factors.yaml", "factors: .", "", `study.yaml:38:18: capital.standards[2].formula.factors: "`},
+	} {
+		factors := ownFactors(t)
+		if test.factors != "" {
+			factors = test.factors
+		}
+		text := company()
+		if test.from != "" {
+			if text = strings.Replace(text, test.from, test.to, 1); text == company() {
+				t.Fatalf("%s: the study has no %q", name, test.from)
+			}
+		}
+		if _, err := openText(t, text, factors, Options{}); err == nil || !strings.Contains(err.Error(), test.want) {
+			t.Errorf("%s: got\n%v\nwant\n%s", name, err, test.want)
+		}
 	}
 }

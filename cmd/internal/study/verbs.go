@@ -123,9 +123,19 @@ func (s *Study) placed(err error) error {
 
 func (s *Study) appraised(all []optimize.Appraisal) (Appraised, error) {
 	none := all[0]
+	c := s.appraiser.Case()
 	a := Appraised{
-		Head: s.head, CostOfCapital: s.appraiser.Case().CostOfCapital, OwnFunds: s.appraiser.Case().OwnFunds, Programmes: all,
-		Gross: GrossFigures{Capital: none.Capital, Result: none.NetResult},
+		Head: s.head, CostOfCapital: c.CostOfCapital, OwnFunds: c.OwnFunds, Standards: c.Standards, Rest: c.Rest, Security: c.Security,
+		Programmes: all, Gross: GrossFigures{Capital: none.Capital, Result: none.NetResult},
+	}
+	if c.Owners != nil {
+		a.Owners = c.Owners.String()
+		if set := s.settings.Capital.Owners; set.Curve != "" {
+			a.Owners = "curve " + set.Curve
+		}
+	}
+	for _, i := range c.Drivers() {
+		a.Drive = append(a.Drive, c.Standards[i].Name)
 	}
 	for _, c := range s.book.Classes {
 		a.Gross.Premium += c.Premium
