@@ -54,6 +54,8 @@ type PerilCapital struct {
 type OtherCapital struct {
 	Name       string
 	Gross, Net float64
+	GrossCost  float64 // part of what the owners ask, as of a class
+	NetCost    float64
 }
 
 // TreatyCapital is the capital that one treaty frees, in money, seen in three ways.
@@ -245,6 +247,9 @@ func (a *Appraiser) allocateCost(k *Allocation, gross, net *position, before, af
 		for c := range k.Classes {
 			k.Classes[c].GrossCost, k.Classes[c].NetCost = a.c.CostOfCapital*k.Classes[c].Gross.Value, a.c.CostOfCapital*k.Classes[c].Net.Value
 		}
+		for i := range k.Others {
+			k.Others[i].GrossCost, k.Others[i].NetCost = a.c.CostOfCapital*k.Others[i].Gross, a.c.CostOfCapital*k.Others[i].Net
+		}
 		for j := range k.Treaties {
 			k.Treaties[j].Cost = a.c.CostOfCapital * k.Treaties[j].Natural.Value
 		}
@@ -254,6 +259,9 @@ func (a *Appraiser) allocateCost(k *Allocation, gross, net *position, before, af
 	netWeights := a.ownerWeights(net, after, a.driving(after))
 	for c := range k.Classes {
 		k.Classes[c].GrossCost, k.Classes[c].NetCost = meanProduct(grossWeights, flows.gross[c]), meanProduct(netWeights, flows.net[c])
+	}
+	if a.rest != nil && len(k.Others) > 0 {
+		k.Others[0].GrossCost, k.Others[0].NetCost = meanProduct(grossWeights, a.rest), meanProduct(netWeights, a.rest)
 	}
 	for _, t := range flows.treaties {
 		k.Treaties[t.place].Cost = -meanProduct(netWeights, t.cost)

@@ -76,11 +76,11 @@ func (r *formulaRule) allocate(k *Allocation, gross, net *position, flows *bookF
 		})
 	}
 	for j, u := range r.a.reinsurers() {
-		k.Others = append(k.Others, OtherCapital{"default of " + u.Name, from.Reinsurer[j], to.Reinsurer[j]})
+		k.Others = append(k.Others, OtherCapital{Name: "default of " + u.Name, Gross: from.Reinsurer[j], Net: to.Reinsurer[j]})
 	}
 	for i := range from.Other {
 		if from.Other[i].Amount != 0 || to.Other[i].Amount != 0 {
-			k.Others = append(k.Others, OtherCapital{from.Other[i].Name, from.Other[i].Amount, to.Other[i].Amount})
+			k.Others = append(k.Others, OtherCapital{Name: from.Other[i].Name, Gross: from.Other[i].Amount, Net: to.Other[i].Amount})
 		}
 	}
 	slopes := r.formula.Slopes(after.position, r.nonLife)
@@ -129,7 +129,7 @@ func (r *covarianceRule) allocate(k *Allocation, gross, net *position) {
 		}
 	}
 	for i, name := range capital.ChargeNames() {
-		k.Others = append(k.Others, OtherCapital{"charge " + name, before.Charges[i], after.Charges[i]})
+		k.Others = append(k.Others, OtherCapital{Name: "charge " + name, Gross: before.Charges[i], Net: after.Charges[i]})
 	}
 }
 

@@ -12,7 +12,7 @@ import (
 
 // TestAllocationAddsUp: whatever the book, the programme and the standard, the parts add up to the gross and the net capital.
 func TestAllocationAddsUp(t *testing.T) {
-	for seed := range uint64(200) {
+	for seed := range uint64(trials(200)) {
 		r := newRand(seed)
 		c := randomCase(t, r)
 		c.Standards = append(c.Standards[seed%4:], c.Standards[:seed%4]...) // each kind drives in turn

@@ -31,10 +31,10 @@ type Bound struct {
 // tangent bounds it from below. Recoveries that reinsurers leave unpaid only add to the cost.
 func (a *Appraiser) ThinLayerBound(space Space) Bound {
 	if a.c.Owners != nil {
-		return Bound{Reason: "no bound is known when the owners price the risk they keep by a distortion"}
+		return Bound{Reason: "the owners price the risk they keep by a distortion"}
 	}
 	curves, obstacle := a.boundCurves(space)
-	best := Bound{Reason: "no bound is known under a formula or a covariance of charges"}
+	best := Bound{Reason: "a formula or a covariance of charges has none"}
 	for _, i := range a.c.Drivers() {
 		r, ok := a.rules[i].(*simulatedRule)
 		if !ok {

@@ -85,7 +85,7 @@ func TestOracleThinLayerBound(t *testing.T) {
 // TestNothingBelowTheBound hunts, on random books and programmes with every kind of treaty and inuring, for a programme below its certified bound.
 func TestNothingBelowTheBound(t *testing.T) {
 	certified := 0
-	for seed := range uint64(600) {
+	for seed := range uint64(trials(600)) {
 		r := newRand(seed)
 		c := randomCase(t, r)
 		c.Standards = c.Standards[1:2] // tail value at risk, deviation
@@ -115,7 +115,7 @@ func TestNothingBelowTheBound(t *testing.T) {
 			}
 		}
 	}
-	if certified < 2000 {
+	if certified < trials(2000) {
 		t.Errorf("only %d bounds were certified", certified)
 	}
 }
@@ -159,7 +159,7 @@ func TestBoundIsNotCertified(t *testing.T) {
 // risks and reinsurers fail.
 func TestNothingOfACompanyBelowItsBound(t *testing.T) {
 	certified, withRest := 0, 0
-	for seed := range uint64(500) {
+	for seed := range uint64(trials(500)) {
 		r := newRand(seed)
 		c := enlarge(r, randomCase(t, r))
 		c.Owners = nil
@@ -194,7 +194,7 @@ func TestNothingOfACompanyBelowItsBound(t *testing.T) {
 			}
 		}
 	}
-	if certified < 500 || withRest < 200 {
+	if certified < trials(500) || withRest < trials(200) {
 		t.Errorf("%d bounds were certified, %d of them with a rest of the company", certified, withRest)
 	}
 }

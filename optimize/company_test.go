@@ -320,7 +320,7 @@ func plainFormula(t testing.TB, c Case, p treaty.Programme, base, recoverable, c
 // TestCompanyAgreesWithPlain compares every kind of standard, unpaid recoveries, the rest of the company and the owners' price with the plain engine.
 func TestCompanyAgreesWithPlain(t *testing.T) {
 	seen := map[string]int{}
-	for seed := range uint64(250) {
+	for seed := range uint64(trials(250)) {
 		r := newRand(seed)
 		c := enlarge(r, randomCase(t, r))
 		a, err := NewAppraiser(c)
@@ -359,7 +359,7 @@ func TestCompanyAgreesWithPlain(t *testing.T) {
 		}
 	}
 	for _, what := range []string{"unpaid", "owners", "rest", "drives formula", "drives covariance", "drives worst", "drives weighted"} {
-		if seen[what] < 20 {
+		if seen[what] < trials(15) {
 			t.Errorf("%s: compared %d times", what, seen[what])
 		}
 	}

@@ -10,7 +10,7 @@ import (
 // covariance. (A deviation may rise: free cover also lifts the expected result.)
 func TestFreeCoverFreesCapital(t *testing.T) {
 	freed := map[string]int{}
-	for seed := range uint64(200) {
+	for seed := range uint64(trials(200)) {
 		r := newRand(seed)
 		c := enlarge(r, randomCase(t, r))
 		c.Owners, c.Rest = nil, nil
@@ -54,7 +54,7 @@ func TestFreeCoverFreesCapital(t *testing.T) {
 		}
 	}
 	for _, name := range []string{"v", "u", "formula", "covariance"} {
-		if freed[name] < 50 {
+		if freed[name] < trials(50) {
 			t.Errorf("%s: freed in %d of 200", name, freed[name])
 		}
 	}

@@ -21,6 +21,14 @@ import (
 // newRand gives a stream of random numbers of its own for a seed.
 func newRand(seed uint64) *rand.Rand { return rand.New(rand.NewPCG(seed, 1)) }
 
+// trials gives how many random cases a test draws: fewer under -short, which the race detector's tier uses.
+func trials(n int) int {
+	if testing.Short() {
+		return n / 5
+	}
+	return n
+}
+
 func randomCase(t testing.TB, r *rand.Rand) Case {
 	t.Helper()
 	classes := []string{"a", "b", "c"}[:1+r.IntN(3)]
@@ -238,7 +246,7 @@ func near(a, b float64) bool {
 // inuring, annual terms, event limits, reinstatements, ties and zeros.
 func TestFastEngineAgreesWithPlain(t *testing.T) {
 	kinds := map[treaty.Kind]int{}
-	for seed := range uint64(400) {
+	for seed := range uint64(trials(400)) {
 		r := rand.New(rand.NewPCG(seed, 1))
 		c := randomCase(t, r)
 		a, err := NewAppraiser(c)
@@ -288,7 +296,7 @@ func TestFastEngineAgreesWithPlain(t *testing.T) {
 		}
 	}
 	for k := treaty.QuotaShare; k <= treaty.AggregateExcess; k++ {
-		if kinds[k] < 100 {
+		if kinds[k] < trials(100) {
 			t.Errorf("only %d treaties of kind %v were compared", kinds[k], k)
 		}
 	}

@@ -109,11 +109,12 @@ func classCapitalTable(a optimize.Allocation, rate float64) textTable {
 		side(u.amount(netPart), u.amount(all.NetMean), returnOn(all.NetMean, optimize.Estimate{Value: netPart}), u.amount(all.NetCost))))
 	for _, o := range a.Others {
 		if o.Gross != 0 || o.Net != 0 {
-			t.Rows = append(t.Rows, row(clean(o.Name), side(u.amount(o.Gross), "–", "–", "–"), side(u.amount(o.Net), "–", "–", "–")))
+			t.Rows = append(t.Rows, row(clean(o.Name), side(u.amount(o.Gross), "–", "–", u.amount(o.GrossCost)), side(u.amount(o.Net), "–", "–", u.amount(o.NetCost))))
 		}
+		all.GrossCost, all.NetCost = all.GrossCost+o.GrossCost, all.NetCost+o.NetCost
 	}
 	if len(a.Others) > 0 {
-		t.Rows = append(t.Rows, row("together", side(u.amount(a.Gross), "–", "–", "–"), side(u.amount(a.Net), "–", "–", "–")))
+		t.Rows = append(t.Rows, row("together", side(u.amount(a.Gross), "–", "–", u.amount(all.GrossCost)), side(u.amount(a.Net), "–", "–", u.amount(all.NetCost))))
 	}
 	return t
 }
@@ -224,7 +225,7 @@ func allocationJSON(programme string, k optimize.Allocation) object {
 		})},
 		{"expenses_less_premiums", number(k.Certain)},
 		{"others", objects(k.Others, func(o optimize.OtherCapital) object {
-			return object{{"name", o.Name}, {"gross", number(o.Gross)}, {"net", number(o.Net)}}
+			return object{{"name", o.Name}, {"gross", number(o.Gross)}, {"net", number(o.Net)}, {"gross_cost", number(o.GrossCost)}, {"net_cost", number(o.NetCost)}}
 		})},
 		{"treaties", objects(k.Treaties, func(t optimize.TreatyCapital) object {
 			return object{{"name", t.Name}, {"stand_alone", number(t.StandAlone)}, {"last_in", number(t.LastIn)}, {"natural", estimate(t.Natural)}, {"cost", number(t.Cost)}}

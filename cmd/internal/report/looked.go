@@ -21,6 +21,9 @@ func PrintLook(w io.Writer, l study.Look, s Style) {
 	g.add("1-in-10 result", u.estimate(l.Gross.NetResult.OneIn10))
 	g.add("1-in-200 result", u.estimate(l.Gross.NetResult.OneIn200))
 	for _, c := range l.Gross.Capital {
+		if c.Alone != nil {
+			g.add("required capital, "+c.Standard+", book alone", u.estimate(c.Alone.Gross))
+		}
 		g.add("required capital, "+c.Standard, u.estimate(c.Gross))
 	}
 	g.print(w, s)

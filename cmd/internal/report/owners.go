@@ -68,7 +68,8 @@ func ownCapitalCosts(s study.Searched) string {
 // costSetting tells on what the cost of risk kept rests.
 func costSetting(a study.Appraised) [2]string {
 	if a.Owners != "" {
-		return [2]string{"Price of the risk kept", "the owners' own, " + clean(a.Owners) + ", on the result kept, backed by the capital required under " + driving(a, true) + ", which drives the search"}
+		return [2]string{"Price of the risk kept", "the owners' own, " + clean(a.Owners) + ", on the result kept, backed by the capital required under " +
+			driving(a, true) + ", which drives the search"}
 	}
 	return [2]string{"Cost of capital", Percent(a.CostOfCapital) + " a year on required capital under " + driving(a, true) + ", which drives the search"}
 }

@@ -80,11 +80,13 @@ func reinsurerTables(a study.Appraised, all []optimize.Appraisal) []textTable {
 
 // securityWords says how failures are drawn.
 func securityWords(a study.Appraised) string {
-	text := "What is lost on default is a fraction of the year's recovery beyond collateral. Where several treaties make up a recovery, its error is the sum of theirs, the most that it can be. "
+	text := "What is lost on default is a fraction of the year's recovery beyond collateral. " +
+		"Where several treaties make up a recovery, its error is the sum of theirs, the most that it can be. "
 	if a.Security.Correlation == 0 {
 		return text + "Failures fall on good and bad years alike."
 	}
-	return text + fmt.Sprintf("Failures are more likely in the cedant's bad years: each reinsurer's fortune hangs on the year with a loading of %s.", written(a.Security.Correlation, 4))
+	return text + "Failures are more likely in the cedant's bad years: each reinsurer's fortune hangs on the year with a loading of " +
+		written(a.Security.Correlation, 4) + "."
 }
 
 func printReinsurers(w io.Writer, s Style, a study.Appraised, all []optimize.Appraisal) {

@@ -3,6 +3,7 @@ package report
 import (
 	"fmt"
 	"io"
+	"math"
 	"slices"
 	"strings"
 
@@ -83,17 +84,20 @@ func (f capitalFigure) row(all []optimize.Appraisal, u unit, standard int) figur
 func capitalFigures(a study.Appraised, standards []optimize.CapitalFigure) []capitalFigure {
 	always := func(optimize.CapitalFigure) bool { return true }
 	before := func(c optimize.CapitalFigure) bool { return c.Alone != nil }
-	whole := capitalFigure{"required capital", "Required capital under every standard (" + bindingMark + "binding: none asks more)", always, func(p optimize.Appraisal, i int, u unit) string {
+	const binding = " (" + bindingMark + "binding: none asks more)"
+	whole := capitalFigure{"required capital", "Required capital under every standard" + binding, always, func(p optimize.Appraisal, i int, u unit) string {
 		text := u.estimate(p.Capital[i].Net)
 		if p.Capital[i].Binding && len(p.Capital) > 1 {
 			text = bindingMark + text
 		}
 		return text
 	}}
-	relief := capitalFigure{"capital relief", "Capital relief", always, func(p optimize.Appraisal, i int, u unit) string { return u.estimate(p.Capital[i].Relief) }}
+	relief := capitalFigure{"capital relief", "Capital relief", always, func(p optimize.Appraisal, i int, u unit) string {
+		return u.estimate(p.Capital[i].Relief)
+	}}
 	list := []capitalFigure{whole, relief}
 	if slices.ContainsFunc(standards, before) {
-		list[0].alone, list[0].every = "required capital, diversified", "Required capital after diversification ("+bindingMark+"binding: none asks more)"
+		list[0].alone, list[0].every = "required capital, diversified", "Required capital after diversification"+binding
 		list[1].alone, list[1].every = "capital relief, diversified", "Capital relief after diversification"
 		of := func(read func(optimize.Alone) optimize.Estimate) func(optimize.Appraisal, int, unit) string {
 			return func(p optimize.Appraisal, i int, u unit) string {
@@ -103,9 +107,11 @@ func capitalFigures(a study.Appraised, standards []optimize.CapitalFigure) []cap
 				return u.estimate(read(*p.Capital[i].Alone))
 			}
 		}
+		net := of(func(x optimize.Alone) optimize.Estimate { return x.Net })
+		freed := of(func(x optimize.Alone) optimize.Estimate { return x.Relief })
 		list = []capitalFigure{
-			{"required capital, book alone", "Required capital of the book alone, before diversification", before, of(func(x optimize.Alone) optimize.Estimate { return x.Net })}, list[0],
-			{"capital relief, book alone", "Capital relief of the book alone, before diversification", before, of(func(x optimize.Alone) optimize.Estimate { return x.Relief })}, list[1],
+			{"required capital, book alone", "Required capital of the book alone, before diversification", before, net}, list[0],
+			{"capital relief, book alone", "Capital relief of the book alone, before diversification", before, freed}, list[1],
 		}
 	}
 	if a.OwnFunds > 0 {
@@ -149,7 +155,7 @@ func partsTables(a study.Appraised, all []optimize.Appraisal) []textTable {
 		for _, p := range all {
 			t.Head = append(t.Head, clean(p.Programme.Name))
 		}
-		if wholeLast(all, i, len(parts)) {
+		if !k.Simulated() && wholeLast(all, i, len(parts)) {
 			parts = parts[:len(parts)-1] // it stands below, with its error
 		}
 		for n, part := range parts {
@@ -186,15 +192,17 @@ func wholeLast(all []optimize.Appraisal, standard, count int) bool {
 	})
 }
 
-// partCell writes a part, whose error is not known, no finer than the error of the whole requirement allows.
+// partCell writes a part, whose error is not known, with three digits, or fewer where the error of the whole requirement is coarser.
 func partCell(c optimize.CapitalFigure, n int, u unit) string {
 	if n >= len(c.Parts) {
 		return "–"
 	}
 	part := c.Parts[n]
 	text := u.amount(part.Amount)
-	if part.Amount != 0 && finite(part.Amount) && known(c.Net) {
-		text = scaled(optimize.Estimate{Value: part.Amount, StandardError: c.Net.StandardError}, u.factor) + u.suffix
+	if x := part.Amount / u.factor; x != 0 && finite(x) && known(c.Net) {
+		if places := decimals(c.Net.StandardError / u.factor); places < 2-int(math.Floor(math.Log10(math.Abs(x)))) { // coarser than three digits
+			text = fixed(x, places) + u.suffix
+		}
 	}
 	if part.Sets {
 		text = bindingMark + text
