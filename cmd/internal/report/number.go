@@ -12,6 +12,10 @@ import (
 // Figures are shown no finer than their standard error tells: the last digit shown is that of the error's first digit, or its second when
 // the first is 1. Simulated figures without an error are shown with three digits, terms of a contract with all they have.
 
+// mostDigits is the most that a simulated figure is shown with, however small its error: a formula on a company's own inputs, or a sum over attritional
+// losses, is known no better for being simulated well.
+const mostDigits = 4
+
 // unit is the power of ten in which money is shown.
 type unit struct {
 	factor float64
@@ -165,10 +169,15 @@ func scaled(e optimize.Estimate, factor float64) string {
 	if !known(e) {
 		return rounded(e.Value / factor)
 	}
-	return fixed(e.Value/factor, decimals(e.StandardError/factor))
+	x := e.Value / factor
+	places := decimals(e.StandardError / factor)
+	if x != 0 {
+		places = min(places, mostDigits-1-int(math.Floor(math.Log10(math.Abs(x)))))
+	}
+	return fixed(x, places)
 }
 
-// errorOf gives a known error in units of factor, with the same last digit as scaled.
+// errorOf gives a known error in units of factor, with the same last digit as scaled but where that has the most digits that a figure is shown with.
 func errorOf(e optimize.Estimate, factor float64) string {
 	return fixed(e.StandardError/factor, decimals(e.StandardError/factor))
 }
