@@ -110,7 +110,7 @@ func TestFiguresAreNoFinerThanTheirError(t *testing.T) {
 			grain /= 10
 		}
 		const slack = 1 + 1e-6 // arithmetic of the check itself
-		coarse := grain // of the figure, which has four digits at most, counted where it starts before it is rounded
+		coarse := grain        // of the figure, which has four digits at most, counted where it starts before it is rounded
 		if value != 0 {
 			coarse = max(grain, math.Pow(10, math.Floor(math.Log10(math.Abs(value)))-3))
 		}
