@@ -76,11 +76,11 @@ func (a *Appraiser) Allocate(p treaty.Programme) ([]Allocation, error) {
 		return nil, fmt.Errorf("allocate %q: %w", p.Name, err)
 	}
 	after := a.requirements(net, w)
-	net = net.own()
-	copy(w.loss, a.ungained)
+	net = a.own(net)
+	w.clearFlows()
 	gross := a.position(treaty.Programme{}, nil, a.meanLoss+a.constant, w)
 	before := a.requirements(gross, w)
-	gross = gross.own()
+	gross = a.own(gross)
 	flows := a.cashFlows(net, w)
 	others, err := a.otherProgrammes(p, net, w)
 	if err != nil {

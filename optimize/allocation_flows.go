@@ -56,7 +56,7 @@ func (a *Appraiser) treatyFlow(p *position, it item, net [][]float64, w *workspa
 		}
 	}
 	if len(it.terms.Panel) > 0 {
-		a.unpaid(it.terms, f.recovery, other)
+		a.unpaidYears(it.terms, f.recovery, other)
 	}
 	for y, r := range f.recovery {
 		t.cost[y] = other[y] - float64(placed*r)

@@ -67,7 +67,7 @@ func TestAllocationAddsUp(t *testing.T) {
 		if err != nil {
 			t.Fatal(err)
 		}
-		weights := a.rules[0].(*simulatedRule).weights(pos.company, 0)
+		weights := a.rules[0].(*simulatedRule).weights(a.own(pos).company, 0)
 		check("natural reliefs", weights.part(a.ungained).Value-freed, whole.Capital[0].Net.Value)
 	}
 }

@@ -60,7 +60,7 @@ func (a *Appraiser) Appraise(p treaty.Programme, detail bool) (Appraisal, error)
 		}
 	}
 	if detail {
-		if err := a.detail(&result, pos.own(), all, w); err != nil {
+		if err := a.detail(&result, a.own(pos), all, w); err != nil {
 			return Appraisal{}, fmt.Errorf("appraise %q: %w", p.Name, err)
 		}
 	}
@@ -85,46 +85,82 @@ func (a *Appraiser) totals(items []item) totals {
 	return sum
 }
 
-// netLosses fills w.loss with −U of each year, the loss after everything that the programme pays and costs, and gives what reinsurers are expected to leave
-// unpaid, money per year; it notes each treaty's part.
+// netLosses gathers in w what a programme adds to the loss of each year beyond what is certain and what its quota shares take, and gives what reinsurers are
+// expected to leave unpaid, money per year; it notes each treaty's part.
 func (a *Appraiser) netLosses(items []item, w *workspace) float64 {
-	unpaid := 0.0
-	certain := 0.0
-	for k := range w.slots {
-		w.slots[k].clear()
-	}
-	for _, it := range items {
-		premium := float64(it.terms.Placed() * it.priced.base)
-		certain += premium - float64(premium*it.priced.commission)
-	}
-	for y, x := range a.ungained {
-		w.loss[y] = x + certain
-	}
+	w.clearFlows()
+	total := 0.0
 	for k, it := range items {
-		placed := it.terms.Placed()
+		annual := w.annual
 		if it.terms.Kind == treaty.QuotaShare {
-			for y, x := range it.subject.annual {
-				w.loss[y] -= float64(placed * x)
-			}
-			items[k].unpaid = a.unpaid(it.terms, it.subject.annual, w.loss) / float64(a.years)
-			unpaid += items[k].unpaid
-			continue
-		}
-		premium := float64(placed * it.priced.base)
-		w.recover(it.terms, it.subject)
-		if it.slot >= 0 {
-			w.flowsInto(&w.slots[it.slot], it.terms, premium)
+			annual = it.subject.annual
 		} else {
-			for _, y := range w.touched {
-				r := w.annual[y]
-				w.loss[y] += float64(premium*it.terms.Reinstated(r)) - float64(placed*r)
+			premium := float64(it.terms.Placed() * it.priced.base)
+			w.recover(it.terms, it.subject)
+			w.rose = w.rose || a.mayRise(it.terms, premium)
+			if it.slot >= 0 {
+				w.addWithSlot(&w.slots[it.slot], it.terms, premium)
+			} else {
+				w.add(it.terms, premium)
 			}
 		}
-		items[k].unpaid = a.unpaid(it.terms, w.annual, w.loss) / float64(a.years)
-		unpaid += items[k].unpaid
+		if len(it.terms.Panel) > 0 {
+			items[k].unpaid = a.unpaid(it.terms, annual, w.addOne) / float64(a.years)
+			total += items[k].unpaid
+		}
 		w.reset()
 	}
-	return unpaid
+	return total
+}
+
+// add adds what an excess treaty, premium as placed, adds to the loss of each touched year: reinstatement premium less what it pays.
+func (w *workspace) add(t treaty.Treaty, premium float64) {
+	placed, annual, offset, gross := t.Placed(), w.annual, w.offset, w.centred
+	last := int32(w.used - 1)
+	sum, squares := w.sum, w.squares
+	for _, y := range w.touched {
+		r := annual[y]
+		x := float64(premium*t.Reinstated(r)) - float64(placed*r)
+		o := offset[y]
+		squares += float64((2*(gross[y]+o) + x) * x)
+		sum += x
+		offset[y] = o + x
+		last = max(last, y)
+	}
+	w.used, w.sum, w.squares = int(last)+1, sum, squares
+}
+
+// addOne adds to the loss of one year.
+func (w *workspace) addOne(y int32, x float64) {
+	o := w.offset[y]
+	w.squares += float64((2*(w.centred[y]+o) + x) * x)
+	w.sum += x
+	w.offset[y] = o + x
+	w.used = max(w.used, int(y)+1)
+}
+
+// mayRise tells whether a treaty may make a year worse: where the reinstatement of what it paid, and what failing reinsurers leave unpaid of it, cost more.
+func (a *Appraiser) mayRise(t treaty.Treaty, premium float64) bool {
+	paid := 1.0 // the least part of a recovery that arrives
+	for _, line := range t.Panel {
+		paid -= line.Share * a.reinsurers()[a.reinsurer[line.Reinsurer]].LossGiven
+	}
+	for _, charge := range t.Reinstatements {
+		if premium*charge > paid*t.Placed()*t.Limit {
+			return true
+		}
+	}
+	return false
+}
+
+// certain is what a programme costs in every year alike: premiums less commissions.
+func certain(items []item) float64 {
+	sum := 0.0
+	for _, it := range items {
+		premium := float64(it.terms.Placed() * it.priced.base)
+		sum += premium - float64(premium*it.priced.commission)
+	}
+	return sum
 }
 
 // meanNet is the mean of −U, from the parts.
@@ -135,7 +171,7 @@ func (a *Appraiser) measure(result *Appraisal, p *position, all []requirement, w
 	result.NetResult.Mean.Value = -p.mean
 	result.NetResult.OneIn10.Value = -p.tails[slices.Index(a.levels, oneIn10)].VaR
 	result.NetResult.OneIn200.Value = -p.tails[slices.Index(a.levels, oneIn200)].VaR
-	result.NetResult.StandardDeviation = standardDeviation(p.losses, p.mean)
+	result.NetResult.StandardDeviation = a.deviation(p)
 	result.Capital = make([]CapitalFigure, len(a.rules))
 	binding := 0
 	for i, q := range all {

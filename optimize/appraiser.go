@@ -10,6 +10,7 @@ import (
 
 	"cedewright/market"
 	"cedewright/portfolio/fault"
+	"cedewright/portfolio/loss"
 	"cedewright/portfolio/sample"
 	"cedewright/portfolio/security"
 	"cedewright/portfolio/treaty"
@@ -17,6 +18,9 @@ import (
 
 // subjectBudget bounds the memory of remembered subjects, in bytes. Beyond it all are forgotten; results never depend on it.
 const subjectBudget = 512 << 20
+
+// momentBudget bounds the count of remembered sums of products.
+const momentBudget = 1 << 16
 
 // pricedBudget bounds the count of remembered layers.
 const pricedBudget = 1 << 20
@@ -34,7 +38,9 @@ type Appraiser struct {
 	levels      []sample.Level // at which the result is measured, rising
 	means       int            // place of the lowest level at which a tail value at risk is asked
 	premiums    []float64      // by class
-	ungained    []float64      // −U of each year with no cover: gross loss + expenses − premium
+	ungained    []float64      // −U of each year with no cover: gross loss + expenses − premium; years stand by falling gross loss
+	centred     []float64      // ungained less its mean
+	squares     float64        // sum of the squares of centred
 	constant    float64        // expenses − premium, the part of −U that is certain
 	meanLoss    float64        // mean annual gross loss
 	gross       []grossCapital
@@ -52,6 +58,7 @@ type Appraiser struct {
 	subjectSize int
 	nextSubject int
 	priced      map[string]*priced
+	moments     map[[2]int]float64
 }
 
 // grossCapital is required capital with no cover under one standard.
@@ -69,7 +76,7 @@ func NewAppraiser(c Case) (*Appraiser, error) {
 		return nil, err
 	}
 	t := c.Book.Table
-	a := &Appraiser{c: c, years: t.Years(), tariffs: map[string]*market.Tariff{}, subjects: map[string]*subject{}, priced: map[string]*priced{}}
+	a := &Appraiser{c: c, years: t.Years(), tariffs: map[string]*market.Tariff{}, subjects: map[string]*subject{}, priced: map[string]*priced{}, moments: map[[2]int]float64{}}
 	for _, curve := range c.Curves {
 		tariff, err := market.NewTariff(curve, a.years)
 		if err != nil {
@@ -81,17 +88,13 @@ func NewAppraiser(c Case) (*Appraiser, error) {
 		a.premiums = append(a.premiums, class.Premium)
 		a.constant -= class.Premium * (1 - class.Expenses)
 	}
-	columns := t.Columns()
-	a.ungained = make([]float64, a.years)
-	for y := range a.years {
-		sum := 0.0
-		for _, x := range columns.Loss[columns.Offset[y]:columns.Offset[y+1]] {
-			sum += x
-		}
-		a.ungained[y] = sum
-	}
+	a.c.Book.Table = byFallingLoss(t)
+	a.ungained = annualLosses(a.c.Book.Table)
 	a.meanLoss = sample.Sum(a.ungained) / float64(a.years)
-	for y := range a.ungained {
+	a.centred = make([]float64, a.years)
+	for y, x := range a.ungained {
+		a.centred[y] = x - a.meanLoss
+		a.squares += float64(a.centred[y] * a.centred[y])
 		a.ungained[y] += a.constant
 	}
 	if err := a.prepareStandards(); err != nil {
@@ -151,8 +154,7 @@ func (a *Appraiser) prepareStandards() error {
 			a.rules = append(a.rules, a.newSimulatedRule(s))
 		}
 	}
-	copy(w.loss, a.ungained)
-	p := a.position(treaty.Programme{}, nil, a.meanLoss+a.constant, w)
+	p := a.own(a.position(treaty.Programme{}, nil, a.meanLoss+a.constant, w))
 	for i, q := range a.requirements(p, w) {
 		influence := a.rules[i].moves(p, q, nil).years
 		g := grossCapital{figure: Estimate{q.amount, sample.InfluenceError(influence)}, influence: influence, parts: a.rules[i].parts(p, w)}
@@ -162,41 +164,42 @@ func (a *Appraiser) prepareStandards() error {
 	return nil
 }
 
+// byFallingLoss gives the table with its years by falling gross loss, equal ones in their order: a year that is mild before reinsurance can then be left out
+// of a search for the worst years, and the years that treaties touch lie close together.
+func byFallingLoss(t *loss.Table) *loss.Table {
+	annual := annualLosses(t)
+	order := make([]int32, len(annual))
+	for y := range order {
+		order[y] = int32(y)
+	}
+	falling := func(i, j int32) int {
+		if c := cmp.Compare(annual[j], annual[i]); c != 0 {
+			return c
+		}
+		return cmp.Compare(i, j)
+	}
+	if slices.IsSortedFunc(order, falling) {
+		return t
+	}
+	slices.SortFunc(order, falling)
+	return t.Reordered(order)
+}
+
+func annualLosses(t *loss.Table) []float64 {
+	columns := t.Columns()
+	annual := make([]float64, t.Years())
+	for y := range annual {
+		sum := 0.0
+		for _, x := range columns.Loss[columns.Offset[y]:columns.Offset[y+1]] {
+			sum += x
+		}
+		annual[y] = sum
+	}
+	return annual
+}
+
 // Case gives the case that is appraised.
 func (a *Appraiser) Case() Case { return a.c }
-
-// workspace is the scratch memory of one appraisal.
-type workspace struct {
-	loss     []float64 // −U by year, in order of years
-	sorted   []float64 // copy that selection may reorder
-	annual   []float64 // sum of layer losses by year; zero between uses
-	touched  []int32   // years in which annual is not zero
-	event    []float64 // sum of layer losses by event, for an event limit; zero between uses
-	hit      []int32   // events in which event is not zero
-	recovery []float64 // positive annual recoveries, to be sorted
-	key      []byte
-
-	tails, companyTails []sample.TailFigures // at Appraiser.levels
-	company             []float64            // −U of the whole company by year; nil unless it is known year by year
-	amounts             []float64            // of criteria
-	formulas            []*formulaWork
-
-	slots []perilSlot // of Appraiser.slots
-	few   []float64   // candidates for a quantile
-}
-
-func (a *Appraiser) newWorkspace() *workspace {
-	n := a.years
-	w := &workspace{loss: make([]float64, n), sorted: make([]float64, n), annual: make([]float64, n)}
-	for _, peril := range a.slots {
-		w.slots = append(w.slots, perilSlot{peril: peril, offset: make([]float64, n)})
-	}
-	w.tails, w.companyTails = make([]sample.TailFigures, len(a.levels)), make([]sample.TailFigures, len(a.levels))
-	if a.rest != nil {
-		w.company = make([]float64, n)
-	}
-	return w
-}
 
 // priced is what a layer costs and pays on average, for 100 % of the treaty.
 type priced struct {
@@ -245,64 +248,6 @@ func (a *Appraiser) items(p treaty.Programme, w *workspace) ([]item, error) {
 		items = append(items, item{terms: t, subject: s, priced: known, place: i, slot: a.slotOf(p, i)})
 	}
 	return items, nil
-}
-
-// recover fills w.annual with the annual recoveries at 100 % of a treaty other than a quota share, after all its annual terms, and
-// lists in w.touched the years in which layer losses arise. The caller must call w.reset afterwards.
-func (w *workspace) recover(t treaty.Treaty, s *subject) {
-	reached := s.above(t.Retention)
-	if t.Kind == treaty.RiskExcess && t.EventLimit > 0 {
-		w.recoverWithEventLimit(t, s, reached)
-	} else {
-		for i, x := range s.loss[:reached] {
-			y := s.year[i]
-			if w.annual[y] == 0 {
-				w.touched = append(w.touched, y)
-			}
-			w.annual[y] += min(x-t.Retention, t.Limit)
-		}
-	}
-	if t.Kind == treaty.AggregateExcess {
-		return
-	}
-	limit := t.AnnualRecoveryLimit()
-	if t.AnnualDeductible == 0 && math.IsInf(limit, 1) {
-		return
-	}
-	for _, y := range w.touched {
-		w.annual[y] = min(max(w.annual[y]-t.AnnualDeductible, 0), limit)
-	}
-}
-
-func (w *workspace) recoverWithEventLimit(t treaty.Treaty, s *subject, reached int) {
-	if len(w.event) < s.events {
-		w.event = make([]float64, s.events)
-	}
-	firstYear := w.hit[:0]
-	for i, x := range s.loss[:reached] {
-		e := s.event[i]
-		if w.event[e] == 0 {
-			firstYear = append(firstYear, int32(i))
-		}
-		w.event[e] += min(x-t.Retention, t.Limit)
-	}
-	for _, i := range firstYear {
-		e, y := s.event[i], s.year[i]
-		if w.annual[y] == 0 {
-			w.touched = append(w.touched, y)
-		}
-		w.annual[y] += min(w.event[e], t.EventLimit)
-		w.event[e] = 0
-	}
-	w.hit = firstYear[:0]
-}
-
-// reset clears what recover left.
-func (w *workspace) reset() {
-	for _, y := range w.touched {
-		w.annual[y] = 0
-	}
-	w.touched = w.touched[:0]
 }
 
 // price gives premium, expected recovery and probabilities of treaty i of a programme, remembered for the next time.

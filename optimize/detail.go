@@ -196,10 +196,10 @@ func (a *Appraiser) unpaidErrors(result *Appraisal, p *position) []float64 {
 	for _, it := range p.items {
 		own := make([]float64, a.years)
 		if it.terms.Kind == treaty.QuotaShare {
-			a.unpaid(it.terms, it.subject.annual, own)
+			a.unpaidYears(it.terms, it.subject.annual, own)
 		} else {
 			w.recover(it.terms, it.subject)
-			a.unpaid(it.terms, w.annual, own)
+			a.unpaidYears(it.terms, w.annual, own)
 			w.reset()
 		}
 		treatyFigure(result, it.terms.Name).ExpectedUnpaid.StandardError = sample.InfluenceError(own)
@@ -336,7 +336,7 @@ func (a *Appraiser) reliefs(result *Appraisal, driving []float64, known map[*pri
 		all := a.requirements(others, w)
 		driver := a.driving(all)
 		figure.Relief.Value = all[driver].amount - result.Driving.Net.Value
-		others = others.own()
+		others = a.own(others)
 		flows := a.flows(others.items, known, w)
 		phi := a.rules[driver].moves(others, all[driver], flows).influence(flows)
 		addScaled(phi, -1, driving)

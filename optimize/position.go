@@ -1,6 +1,7 @@
 package optimize
 
 import (
+	"math"
 	"slices"
 
 	"cedewright/portfolio/capital"
@@ -8,15 +9,53 @@ import (
 	"cedewright/portfolio/treaty"
 )
 
-// position is what a programme leaves to the company, as far as standards look at it.
+// position is what a programme leaves to the company, as far as standards look at it. Years stand by falling gross loss.
 type position struct {
-	programme treaty.Programme
-	items     []item
-	losses    []float64             // −U by year, in order of years
-	mean      float64               // of losses
-	tails     []sample.TailFigures  // of losses, at Appraiser.levels
-	perils    [][]capital.PerilLoss // by covariance
-	company   view                  // the same of the whole company; of the book alone when nothing is known of the rest year by year
+	programme    treaty.Programme
+	items        []item
+	certain      float64               // premiums less commissions
+	shares       []share               // its quota shares
+	offset       []float64             // what its other treaties and failing reinsurers add to each year; zero from its end on
+	sum, squares float64               // of the offsets, see workspace
+	mean         float64               // of −U
+	tails        []sample.TailFigures  // of −U, at Appraiser.levels
+	perils       [][]capital.PerilLoss // by covariance
+	losses       []float64             // −U by year; nil until they are asked for (own)
+	company      view                  // the same of the whole company; of the book alone when nothing is known of the rest year by year
+}
+
+// share is a quota share: of each year it takes placed times annual.
+type share struct {
+	placed float64
+	s      *subject
+}
+
+// net gives −U of one year.
+func (a *Appraiser) net(p *position, y int) float64 {
+	x := a.ungained[y] + p.certain
+	for _, q := range p.shares {
+		x -= float64(q.placed * q.s.annual[y])
+	}
+	if y < len(p.offset) {
+		x += p.offset[y]
+	}
+	return x
+}
+
+// fill writes −U of every year.
+func (a *Appraiser) fill(p *position, losses []float64) {
+	for y, x := range a.ungained {
+		losses[y] = x + p.certain
+	}
+	for _, q := range p.shares {
+		placed := q.placed
+		for y, x := range q.s.annual {
+			losses[y] -= float64(placed * x)
+		}
+	}
+	for y, x := range p.offset {
+		losses[y] += x
+	}
 }
 
 // view is a sample of yearly losses and its tail figures.
@@ -89,14 +128,27 @@ func (a *Appraiser) noMoves(items int) moves {
 	return moves{make([]float64, a.years), make([]float64, items), make([]float64, items)}
 }
 
-// position gathers what standards look at, from the net losses in w.loss.
+// position gathers what standards look at, from what netLosses has just left in w.
 func (a *Appraiser) position(p treaty.Programme, items []item, mean float64, w *workspace) *position {
-	pos := &position{programme: p, items: items, losses: w.loss, mean: mean, tails: w.tails}
-	copy(w.sorted, w.loss)
-	sample.Tails(w.sorted, a.levels, a.means, pos.tails)
+	pos := &position{programme: p, items: items, certain: certain(items), offset: w.offset[:w.used], sum: w.sum, squares: w.squares, mean: mean, tails: w.tails}
+	for _, it := range items {
+		if it.terms.Kind == treaty.QuotaShare {
+			pos.shares = append(pos.shares, share{it.terms.Placed(), it.subject})
+		}
+	}
 	for _, r := range a.covariances {
 		pos.perils = append(pos.perils, r.losses(pos, w))
 	}
+	if a.rest == nil && a.c.Owners == nil && !w.rose {
+		w.few = a.largest(pos, a.levels[0].Beyond(a.years), w.few)
+		sample.TailsOfLargest(w.few, a.years, a.levels, a.means, pos.tails)
+		pos.company = view{nil, pos.mean, pos.tails}
+		return pos
+	}
+	a.fill(pos, w.loss)
+	pos.losses = w.loss
+	copy(w.sorted, w.loss)
+	sample.Tails(w.sorted, a.levels, a.means, pos.tails)
 	pos.company = view{pos.losses, pos.mean, pos.tails}
 	if a.rest != nil {
 		for y, x := range w.loss {
@@ -109,15 +161,100 @@ func (a *Appraiser) position(p treaty.Programme, items []item, mean float64, w *
 	return pos
 }
 
-// own gives a position that scratch memory no longer moves.
-func (p *position) own() *position {
+// largest gives the k largest losses of a position in scratch memory, and at times some others, when no year is made worse: so the losses of the worst years before
+// reinsurance bound the k-th largest from below, and a year that is not above that bound before reinsurance cannot be among them.
+func (a *Appraiser) largest(p *position, k int, few []float64) []float64 {
+	n := a.years
+	few = few[:0]
+	next := 0
+	least := math.Inf(-1)
+	for next < n && a.ungained[next]+p.certain > least {
+		for ; next < n && len(few) < 2*k && a.ungained[next]+p.certain > least; next++ {
+			if x := a.net(p, next); x > least {
+				few = append(few, x)
+			}
+		}
+		if len(few) < 2*k {
+			break
+		}
+		least = sample.Select(few, len(few)-k+1)
+		few = append(few[:0], few[len(few)-k:]...)
+	}
+	return few
+}
+
+// own gives a position that scratch memory no longer moves, its losses filled.
+func (a *Appraiser) own(p *position) *position {
 	q := *p
-	q.losses, q.tails = slices.Clone(p.losses), slices.Clone(p.tails)
+	q.offset, q.tails = slices.Clone(p.offset), slices.Clone(p.tails)
+	q.losses = make([]float64, a.years)
+	a.fill(p, q.losses)
 	q.company = view{q.losses, p.company.mean, q.tails}
-	if &p.company.losses[0] != &p.losses[0] {
+	if a.rest != nil {
 		q.company.losses, q.company.tails = slices.Clone(p.company.losses), slices.Clone(p.company.tails)
 	}
 	return &q
+}
+
+// deviation is the standard deviation of −U, divisor N − 1, from sums over what differs from the position without cover.
+func (a *Appraiser) deviation(p *position) float64 {
+	if a.years < 2 {
+		return 0
+	}
+	sum, squares := 0.0, a.squares // of the gross result less its mean, less the shares, plus the offset
+	for i, q := range p.shares {
+		sum -= float64(q.placed * q.s.mean * float64(a.years))
+		squares -= float64(2 * q.placed * a.moment(q.s, nil))
+		for j, r := range p.shares {
+			if j <= i {
+				twice := 2.0
+				if j == i {
+					twice = 1
+				}
+				squares += float64(twice * q.placed * r.placed * a.moment(q.s, r.s))
+			}
+		}
+	}
+	sum += p.sum
+	squares += p.squares
+	for _, q := range p.shares {
+		annual, cross := q.s.annual[:len(p.offset)], 0.0
+		for y, o := range p.offset {
+			cross += float64(annual[y] * o)
+		}
+		squares -= float64(2 * q.placed * cross)
+	}
+	n := float64(a.years)
+	return math.Sqrt(max(squares-float64(sum*sum/n), 0) / (n - 1))
+}
+
+// moment gives the sum over years of the product of two annual subjects, or of one and the gross result less its mean; remembered.
+func (a *Appraiser) moment(s, other *subject) float64 {
+	key := [2]int{s.number, 0}
+	if other != nil {
+		key = [2]int{min(s.number, other.number), max(s.number, other.number)}
+	}
+	a.mu.Lock()
+	known, ok := a.moments[key]
+	a.mu.Unlock()
+	if ok {
+		return known
+	}
+	sum := 0.0
+	with := a.centred
+	if other != nil {
+		with = other.annual
+	}
+	for y, x := range s.annual {
+		sum += float64(x * with[y])
+	}
+	a.mu.Lock()
+	defer a.mu.Unlock()
+	if len(a.moments) >= momentBudget {
+		clear(a.moments)
+	}
+	a.moments[key] = sum
+	return sum
 }
 
 // withinStrata takes off influence values what the rest of the company explains: its losses are the fixed quantiles of their law, not drawn, so that only

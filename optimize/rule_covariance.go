@@ -120,17 +120,24 @@ func (s *perilSlot) open(t treaty.Treaty, premium float64) {
 
 func (s *perilSlot) add(y int32, x float64) { s.offset[s.peril.rank[y]] += x }
 
-// flowsInto adds what a treaty adds to each touched year to the net losses, and to the slot of the one peril that it answers.
-func (w *workspace) flowsInto(s *perilSlot, t treaty.Treaty, premium float64) {
+// addWithSlot does what add does, and adds the same to the slot of the one peril that the treaty answers.
+func (w *workspace) addWithSlot(s *perilSlot, t treaty.Treaty, premium float64) {
 	s.open(t, premium)
 	placed := t.Placed()
-	loss, annual, rank, offset := w.loss, w.annual, s.peril.rank, s.offset
+	annual, offset, gross, rank, alone := w.annual, w.offset, w.centred, s.peril.rank, s.offset
+	last := int32(w.used - 1)
+	sum, squares := w.sum, w.squares
 	for _, y := range w.touched {
 		r := annual[y]
 		x := float64(premium*t.Reinstated(r)) - float64(placed*r)
-		loss[y] += x
-		offset[rank[y]] += x
+		o := offset[y]
+		squares += float64((2*(gross[y]+o) + x) * x)
+		sum += x
+		offset[y] = o + x
+		alone[rank[y]] += x
+		last = max(last, y)
 	}
+	w.used, w.sum, w.squares = int(last)+1, sum, squares
 }
 
 func (s *perilSlot) clear() {

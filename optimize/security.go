@@ -24,9 +24,9 @@ func (a *Appraiser) prepareSecurity() {
 	}
 }
 
-// unpaid adds to the losses what a treaty's reinsurers leave unpaid in the years in which they fail, given its annual recoveries at 100 %, and gives the sum
-// over all years.
-func (a *Appraiser) unpaid(t treaty.Treaty, annual, losses []float64) float64 {
+// unpaid calls take with what a treaty's reinsurers leave unpaid in each year in which they fail, given its annual recoveries at 100 %, and gives the sum over
+// all years.
+func (a *Appraiser) unpaid(t treaty.Treaty, annual []float64, take func(y int32, lost float64)) float64 {
 	sum := 0.0
 	for _, line := range t.Panel {
 		j := a.reinsurer[line.Reinsurer]
@@ -34,12 +34,17 @@ func (a *Appraiser) unpaid(t treaty.Treaty, annual, losses []float64) float64 {
 		for _, y := range a.failures.Years(j) {
 			if annual[y] > 0 {
 				lost := r.Unpaid(t.Placed()*line.Share*annual[y], line.Collateral)
-				losses[y] += lost
+				take(y, lost)
 				sum += lost
 			}
 		}
 	}
 	return sum
+}
+
+// unpaidYears adds what a treaty's reinsurers leave unpaid to yearly losses.
+func (a *Appraiser) unpaidYears(t treaty.Treaty, annual, losses []float64) {
+	a.unpaid(t, annual, func(y int32, lost float64) { losses[y] += lost })
 }
 
 // FailureWarnings says which reinsurers fail in too few simulated years for a figure of theirs; none without a register.

@@ -53,3 +53,19 @@ func (t *Table) Perils() []string { return t.perils }
 
 // Columns gives the columns; read only.
 func (t *Table) Columns() Columns { return t.columns }
+
+// Reordered gives a copy of the table whose year i is year order[i] of this one; order must hold every year once.
+func (t *Table) Reordered(order []int32) *Table {
+	c := t.columns
+	r := Columns{
+		Offset: make([]int, 1, len(c.Offset)), Event: make([]int32, 0, len(c.Event)), Class: make([]uint16, 0, len(c.Class)), Peril: make([]uint16, 0, len(c.Peril)),
+		Risk: make([]int32, 0, len(c.Risk)), Loss: make([]float64, 0, len(c.Loss)),
+	}
+	for _, y := range order {
+		from, to := c.Offset[y], c.Offset[y+1]
+		r.Event, r.Class, r.Peril = append(r.Event, c.Event[from:to]...), append(r.Class, c.Class[from:to]...), append(r.Peril, c.Peril[from:to]...)
+		r.Risk, r.Loss = append(r.Risk, c.Risk[from:to]...), append(r.Loss, c.Loss[from:to]...)
+		r.Offset = append(r.Offset, len(r.Loss))
+	}
+	return &Table{classes: t.classes, perils: t.perils, columns: r}
+}

@@ -66,6 +66,9 @@ func Tail(values []float64, l Level) (valueAtRisk, tailValueAtRisk float64) {
 	return valueAtRisk, sum / (l.Tail() * float64(n))
 }
 
+// Beyond counts the values of a sample of n at or above the quantile of a level, itself included.
+func (l Level) Beyond(n int) int { return n - l.Rank(n) + 1 }
+
 // TailFigures are value at risk and tail value at risk at one level, in the unit of the values.
 type TailFigures struct{ VaR, TVaR float64 }
 
@@ -73,18 +76,24 @@ type TailFigures struct{ VaR, TVaR float64 }
 // value at risk is worked out for levels[means:] alone, 0 below. It allocates nothing. Each level looks only at the values that the level before it left above itself, so that further levels cost
 // little. The figures are those of Sample.VaR and Sample.TVaR to rounding.
 func Tails(values []float64, levels []Level, means int, dst []TailFigures) {
-	n := len(values)
+	TailsOfLargest(values, len(values), levels, means, dst)
+}
+
+// TailsOfLargest does the same for a sample of n values of which only the largest are given: at least as many as lie at or above the quantile of the lowest
+// level, which Beyond counts.
+func TailsOfLargest(values []float64, n int, levels []Level, means int, dst []TailFigures) {
+	missing := n - len(values)
 	done := 0 // values[:done] are in their places: not above the rest, and what a lower level left above itself stays there
 	for i, l := range levels {
-		k := l.Rank(n)
-		selectRange(values, min(done, k-1), n-1, k-1)
+		k := l.Rank(n) - missing
+		selectRange(values, min(done, k-1), len(values)-1, k-1)
 		dst[i] = TailFigures{VaR: values[k-1]}
 		done = k
 	}
 	// From the top down each level adds what lies between its quantile and the one above.
-	sum, from := 0.0, n
+	sum, from := 0.0, len(values)
 	for i := len(levels) - 1; i >= means; i-- {
-		k := levels[i].Rank(n)
+		k := levels[i].Rank(n) - missing
 		if k < from {
 			sum += Sum(values[k:from])
 			from = k

@@ -43,6 +43,30 @@ func TestTailsAgainstTail(t *testing.T) {
 	})
 }
 
+// TestTailsOfLargest: the largest values alone give what the whole sample gives, however many more than needed are handed over.
+func TestTailsOfLargest(t *testing.T) {
+	levels := []Level{level(t, "80%"), level(t, "90%"), level(t, "99%")}
+	rapid.Check(t, func(t *rapid.T) {
+		values := rapid.SliceOfN(rapid.Map(rapid.IntRange(-20, 500), func(i int) float64 { return float64(i) }), 1, 800).Draw(t, "values")
+		n := len(values)
+		want, got := make([]TailFigures, 3), make([]TailFigures, 3)
+		Tails(slices.Clone(values), levels, 0, want)
+		slices.Sort(values)
+		beyond := levels[0].Beyond(n)
+		if values[n-beyond] != want[0].VaR || beyond < 1 {
+			t.Fatalf("%d values of %d lie at or above the quantile %v", beyond, n, want[0].VaR)
+		}
+		top := values[n-rapid.IntRange(beyond, n).Draw(t, "given"):]
+		top = rapid.Permutation(slices.Clone(top)).Draw(t, "order")
+		TailsOfLargest(top, n, levels, 0, got)
+		for i := range want {
+			if got[i].VaR != want[i].VaR || math.Abs(got[i].TVaR-want[i].TVaR) > 1e-9*(1+math.Abs(want[i].TVaR)) { // sums in another order
+				t.Fatalf("%v: %+v, want %+v", levels[i], got[i], want[i])
+			}
+		}
+	})
+}
+
 func TestTailsAllocatesNothing(t *testing.T) {
 	values := shaped(shapes[1].at, 10_000)
 	levels := []Level{level(t, "90%"), level(t, "99%"), level(t, "99.5%")}
