@@ -113,21 +113,42 @@ func (a *Appraiser) netLosses(items []item, w *workspace) float64 {
 	return total
 }
 
-// add adds what an excess treaty, premium as placed, adds to the loss of each touched year: reinstatement premium less what it pays.
+// add adds what an excess treaty, premium as placed, adds to the loss of each touched year: reinstatement premium less what it pays. It leaves these flows in
+// w.flow.
 func (w *workspace) add(t treaty.Treaty, premium float64) {
-	placed, annual, offset, gross := t.Placed(), w.annual, w.offset, w.centred
+	w.flowsOf(t, premium)
+	offset, gross := w.offset, w.centred
 	last := int32(w.used - 1)
 	sum, squares := w.sum, w.squares
-	for _, y := range w.touched {
-		r := annual[y]
-		x := float64(premium*t.Reinstated(r)) - float64(placed*r)
-		o := offset[y]
+	for i, y := range w.touched {
+		x, o := w.flow[i], offset[y]
 		squares += float64((2*(gross[y]+o) + x) * x)
 		sum += x
 		offset[y] = o + x
 		last = max(last, y)
 	}
 	w.used, w.sum, w.squares = int(last)+1, sum, squares
+}
+
+// flowsOf works the flows of the touched years out: Treaty.Reinstated, its constants taken out of the loop.
+func (w *workspace) flowsOf(t treaty.Treaty, premium float64) {
+	w.flow, w.slopes = w.flow[:0], w.slopes[:0]
+	for _, charge := range t.Reinstatements {
+		w.slopes = append(w.slopes, premium*charge/t.Limit)
+	}
+	placed, limit := t.Placed(), t.Limit
+	for _, y := range w.touched {
+		r := w.annual[y]
+		x := -float64(placed * r)
+		for _, slope := range w.slopes {
+			if r <= 0 {
+				break
+			}
+			x += float64(slope * min(r, limit))
+			r -= limit
+		}
+		w.flow = append(w.flow, x)
+	}
 }
 
 // addOne adds to the loss of one year.

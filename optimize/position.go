@@ -161,24 +161,18 @@ func (a *Appraiser) position(p treaty.Programme, items []item, mean float64, w *
 	return pos
 }
 
-// largest gives the k largest losses of a position in scratch memory, and at times some others, when no year is made worse: so the losses of the worst years before
-// reinsurance bound the k-th largest from below, and a year that is not above that bound before reinsurance cannot be among them.
+// largest gives the k largest losses of a position in scratch memory, and at times some others, when no year is made worse: so the losses of the worst years
+// before reinsurance bound the k-th largest from below, and a year that is not above that bound before reinsurance cannot be among them.
 func (a *Appraiser) largest(p *position, k int, few []float64) []float64 {
-	n := a.years
 	few = few[:0]
-	next := 0
 	least := math.Inf(-1)
-	for next < n && a.ungained[next]+p.certain > least {
-		for ; next < n && len(few) < 2*k && a.ungained[next]+p.certain > least; next++ {
-			if x := a.net(p, next); x > least {
-				few = append(few, x)
+	for y := 0; y < a.years && a.ungained[y]+p.certain > least; y++ {
+		if x := a.net(p, y); x > least {
+			if few = append(few, x); len(few) >= 2*k {
+				least = sample.Select(few, len(few)-k+1)
+				few = append(few[:0], few[len(few)-k:]...)
 			}
 		}
-		if len(few) < 2*k {
-			break
-		}
-		least = sample.Select(few, len(few)-k+1)
-		few = append(few[:0], few[len(few)-k:]...)
 	}
 	return few
 }

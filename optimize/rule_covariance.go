@@ -4,7 +4,6 @@ import (
 	"cmp"
 	"math"
 	"slices"
-	"sort"
 
 	"cedewright/portfolio/capital"
 	"cedewright/portfolio/sample"
@@ -34,27 +33,26 @@ type perilYears struct {
 	name    string
 	annual  []float64 // by year
 	falling []float64 // the same, largest first
-	rank    []int32   // of each year in falling; equal losses by year
+	order   []int32   // the years of falling; equal losses by year
 }
 
 // perilYears gives the yearly losses of a peril; all 0 for one that the book does not have.
 func (a *Appraiser) perilYears(name string) *perilYears {
-	y := &perilYears{name: name, annual: make([]float64, a.years), falling: make([]float64, a.years), rank: make([]int32, a.years)}
+	y := &perilYears{name: name, annual: make([]float64, a.years), falling: make([]float64, a.years), order: make([]int32, a.years)}
 	if i := slices.Index(a.c.Book.Table.Perils(), name); i >= 0 {
 		y.annual = a.c.Book.Table.Annual(-1, i)
 	}
-	order := make([]int32, a.years)
-	for i := range order {
-		order[i] = int32(i)
+	for i := range y.order {
+		y.order[i] = int32(i)
 	}
-	slices.SortFunc(order, func(i, j int32) int {
+	slices.SortFunc(y.order, func(i, j int32) int {
 		if o := cmp.Compare(y.annual[j], y.annual[i]); o != 0 {
 			return o
 		}
 		return cmp.Compare(i, j)
 	})
-	for k, year := range order {
-		y.falling[k], y.rank[year] = y.annual[year], int32(k)
+	for k, year := range y.order {
+		y.falling[k] = y.annual[year]
 	}
 	return y
 }
@@ -78,7 +76,7 @@ func (a *Appraiser) slotNamed(peril string) int {
 // alone gives a programme as one peril sees it: the placed treaties that cover it, restricted to it.
 func alone(p treaty.Programme, peril string) (restricted treaty.Programme) {
 	covers := func(t treaty.Treaty) bool {
-		return t.Placed() > 0 && (len(t.Perils) == 0 || slices.Contains(t.Perils, peril))
+		return t.Placed() > 0 && mayAnswer(t, peril)
 	}
 	kept := map[string]bool{}
 	for _, t := range p.Treaties {
@@ -97,47 +95,44 @@ func alone(p treaty.Programme, peril string) (restricted treaty.Programme) {
 	return restricted
 }
 
+// mayAnswer tells whether a treaty covers a peril.
+func mayAnswer(t treaty.Treaty, peril string) bool {
+	return len(t.Perils) == 0 || slices.Contains(t.Perils, peril)
+}
+
 func itemOf(items []item, name string) int {
 	return slices.IndexFunc(items, func(it item) bool { return it.terms.Name == name })
 }
 
-// perilSlot gathers what a programme adds to the yearly losses of one peril, the years by falling loss, so that those that matter lie side by side.
+// perilSlot gathers what a programme adds to the yearly losses of one peril.
 type perilSlot struct {
 	peril  *perilYears
-	offset []float64 // by rank; zero where no treaty answers
+	offset []float64 // by year; zero where no treaty answers
 	used   int       // offsets from here on are zero
 	rose   bool      // some offset may be above zero: a reinstatement may cost more than the treaty paid
 }
 
-// open makes room for a treaty, premium and share as placed, that touches no year whose loss is not above its retention.
+// open makes ready for a treaty, premium as placed.
 func (s *perilSlot) open(t treaty.Treaty, premium float64) {
-	above := sort.Search(len(s.peril.falling), func(i int) bool { return s.peril.falling[i] <= t.Retention })
-	s.used = max(s.used, above)
 	for _, charge := range t.Reinstatements {
 		s.rose = s.rose || premium*charge > t.Placed()*t.Limit
 	}
 }
 
-func (s *perilSlot) add(y int32, x float64) { s.offset[s.peril.rank[y]] += x }
+func (s *perilSlot) add(y int32, x float64) {
+	s.offset[y] += x
+	s.used = max(s.used, int(y)+1)
+}
 
 // addWithSlot does what add does, and adds the same to the slot of the one peril that the treaty answers.
 func (w *workspace) addWithSlot(s *perilSlot, t treaty.Treaty, premium float64) {
 	s.open(t, premium)
-	placed := t.Placed()
-	annual, offset, gross, rank, alone := w.annual, w.offset, w.centred, s.peril.rank, s.offset
-	last := int32(w.used - 1)
-	sum, squares := w.sum, w.squares
-	for _, y := range w.touched {
-		r := annual[y]
-		x := float64(premium*t.Reinstated(r)) - float64(placed*r)
-		o := offset[y]
-		squares += float64((2*(gross[y]+o) + x) * x)
-		sum += x
-		offset[y] = o + x
-		alone[rank[y]] += x
-		last = max(last, y)
+	w.add(t, premium)
+	offset := s.offset
+	for i, y := range w.touched {
+		offset[y] += w.flow[i]
 	}
-	w.used, w.sum, w.squares = int(last)+1, sum, squares
+	s.used = max(s.used, w.used)
 }
 
 func (s *perilSlot) clear() {
@@ -182,7 +177,7 @@ func (r *covarianceRule) eachTreaty(p *position, peril string, w *workspace, wan
 func (r *covarianceRule) netAt(p *position, y perilAtLevel, w *workspace) float64 {
 	n := r.a.years
 	slot := &w.slots[y.slot]
-	r.eachTreaty(p, y.name, w, func(it item) bool { return it.slot < 0 }, func(k int, t treaty.Treaty, annual []float64, touched []int32) {
+	r.eachTreaty(p, y.name, w, func(it item) bool { return it.slot < 0 && mayAnswer(it.terms, y.name) }, func(k int, t treaty.Treaty, annual []float64, touched []int32) {
 		placed := t.Placed()
 		if t.Kind == treaty.QuotaShare { // it pays a part of every loss: no offset rises
 			slot.used = len(slot.offset)
@@ -204,25 +199,23 @@ func (r *covarianceRule) netAt(p *position, y perilAtLevel, w *workspace) float6
 	return y.largest(slot, n-r.rule.Level.Rank(n)+1, w)
 }
 
-// largest gives the k-th largest net loss. No treaty makes a year worse, but for the odd one whose reinstatement costs more than it paid: so the net losses
-// of the worst years before reinsurance bound the answer from below, and a year whose gross loss is not above that bound cannot matter.
+// largest gives the k-th largest net loss, as Appraiser.largest does: the worst years before reinsurance bound it from below, but for the odd programme
+// whose reinsurance may make a year worse.
 func (y *perilYears) largest(slot *perilSlot, k int, w *workspace) float64 {
 	w.few = w.few[:0]
 	if slot.rose {
-		for i, x := range y.falling {
+		for i, x := range y.annual {
 			w.few = append(w.few, x+slot.offset[i])
 		}
 		return sample.Select(w.few, len(w.few)-k+1)
 	}
-	least := math.Inf(1)
-	for i, x := range y.falling[:k] {
-		net := x + slot.offset[i]
-		least = min(least, net)
-		w.few = append(w.few, net)
-	}
-	for i := k; i < len(y.falling) && y.falling[i] > least; i++ {
-		if net := y.falling[i] + slot.offset[i]; net > least {
-			if w.few = append(w.few, net); len(w.few) >= 4*k {
+	least := math.Inf(-1)
+	for i, x := range y.falling {
+		if x <= least {
+			break
+		}
+		if net := x + slot.offset[y.order[i]]; net > least {
+			if w.few = append(w.few, net); len(w.few) >= 3*k {
 				least = sample.Select(w.few, len(w.few)-k+1)
 				w.few = append(w.few[:0], w.few[len(w.few)-k:]...)
 			}

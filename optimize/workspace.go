@@ -18,6 +18,8 @@ type workspace struct {
 	sorted       []float64 // copy that selection may reorder
 	annual       []float64 // sum of layer losses by year; zero between uses
 	touched      []int32   // years in which annual is not zero
+	flow         []float64 // of the touched years, see add
+	slopes       []float64 // of reinstatements, see flowsOf
 	event        []float64 // sum of layer losses by event, for an event limit; zero between uses
 	hit          []int32   // events in which event is not zero
 	recovery     []float64 // positive annual recoveries, to be sorted

@@ -14,16 +14,18 @@ import (
 //
 //	K = multiple · (1 + operational) · (R0 + √(R1² + … + R5² + Rcat²)), Rcat = √(Σ over perils of (net loss + credit · recoverable)²)
 //
-// The root was read in an accessible account of the instructions alone; the perils' root, the credit charge inside each peril, its 4.8 %, the 3 % for
-// operational risk and the control level of one half are from memory. All of them are parameters: the instructions in force prevail.
+// Of the formula, only R0 plus the root with Rcat in it was read, in a public forum's account of the instructions; read too, that hurricane and
+// earthquake have charges of their own since 2013. From memory are the root over the perils, the level of 1 in 100 net of reinsurance, the place of
+// the credit charge inside each peril and so inside both roots, its 4.8 % (a proposal of 2010, read, had 10 % of the ceded loss), the 3 % for
+// operational risk and the control level of one half. All of them are parameters: the instructions in force prevail.
 type Covariance struct {
 	Uncorrelated     float64      // R0, money, ≥ 0: outside the root
 	Charges          [5]float64   // R1 to R5, money, ≥ 0
 	Perils           []string     // perils of the book with a catastrophe charge, each alone
 	Level            sample.Level // of the yearly loss of a peril, such as 1 in 100
 	ContingentCredit float64      // fraction of the modelled recoverables of each peril, added to its net loss, 0–1
-	Operational      float64      // fraction added to the whole, ≥ 0
-	Multiple         float64      // by which the whole counts, > 0: 0.5 for a control level of one half
+	Operational      float64      // fraction added to the whole, 0–1
+	Multiple         float64      // by which the whole counts, above 0, at most 1: 0.5 for a control level of one half
 }
 
 // PerilLoss is the yearly loss of one peril at the level of the standard, in money.
@@ -103,7 +105,8 @@ func (c *Covariance) root(perils []PerilLoss) (catastrophe, all float64) {
 	return catastrophe, math.Sqrt(sum)
 }
 
-// Require gives the requirement for the losses of the perils, in their order. It allocates nothing.
+// Require gives the requirement for the losses of the perils, in their order. A net loss or a recoverable below 0 counts as 0. What is asked never
+// falls when a loss or a charge rises, and doubles when all of them double. It allocates nothing.
 func (c *Covariance) Require(perils []PerilLoss) CovarianceFigures {
 	catastrophe, all := c.root(perils)
 	return CovarianceFigures{catastrophe, c.scale() * (c.Uncorrelated + all)}

@@ -3,9 +3,11 @@ package capital
 import (
 	"fmt"
 	"math"
+	"slices"
 	"strings"
 	"testing"
 
+	"cedewright/portfolio/fault"
 	"cedewright/portfolio/portfoliotest"
 
 	"pgregory.net/rapid"
@@ -72,6 +74,11 @@ func TestCovarianceByProperty(t *testing.T) {
 		if got := twice.Require(doubled).Total; got != 2*total {
 			t.Fatalf("twice everything asks %v, not twice %v", got, total)
 		}
+		more := *c
+		more.Charges[rapid.IntRange(0, 4).Draw(t, "raised")] += money.Draw(t, "rise")
+		if got := more.Require(perils).Total; got < total {
+			t.Fatalf("a greater charge asks less: %v, %v", got, total)
+		}
 		slopes := c.Slopes(perils)
 		const step = 1e-4
 		for i := range perils {
@@ -133,6 +140,40 @@ func TestBadCovariances(t *testing.T) {
 		if err := c.Validate(); err == nil || !strings.Contains(err.Error(), want) || strings.Contains(err.Error(), "\n") {
 			t.Errorf("%v, want %s", err, want)
 		}
+	}
+	all := &Covariance{Uncorrelated: math.Inf(1), Charges: [5]float64{-1, 0, 0, 0, math.NaN()}, Perils: []string{"a", "b", "a", "a"}, ContingentCredit: -1, Operational: math.NaN(),
+		Multiple: math.NaN()}
+	var keys []string
+	for _, f := range fault.All(all.Validate()) {
+		keys = append(keys, f.Key)
+	}
+	want := []string{"charges.r0", "charges.r1", "charges.r5", "perils[2]", "perils[3]", "level", "contingent_credit", "operational", "multiple"}
+	if !slices.Equal(keys, want) {
+		t.Errorf("faults at %q, want %q", keys, want)
+	}
+}
+
+// TestCovarianceWhereNothingIsModelled: with Rcat 0 the given charges alone are asked for, no peril has a slope or a part, and losses below 0 count as 0.
+func TestCovarianceWhereNothingIsModelled(t *testing.T) {
+	c := riskBased()
+	c.ContingentCredit = 0.048
+	for _, perils := range [][]PerilLoss{nil, {{}, {}}, {{Net: -5, Recoverable: -7}, {Net: -1}}} {
+		got := c.Require(perils)
+		if want := 10 + math.Sqrt(5*5+8*8+12*12+40*40+30*30); got.Catastrophe != 0 || math.Abs(got.Total-want) > 1e-13 { // one rounding
+			t.Errorf("%+v, want %v", got, want)
+		}
+		for i, s := range c.Slopes(perils) {
+			if s != (PerilLoss{}) || c.Parts(perils).Perils[i] != 0 {
+				t.Errorf("peril %d: slope %+v, part %v", i, s, c.Parts(perils).Perils[i])
+			}
+		}
+	}
+}
+
+func TestCovarianceAllocatesNothing(t *testing.T) {
+	c, perils := riskBased(), []PerilLoss{{20, 80}, {15, 35}}
+	if n := testing.AllocsPerRun(10, func() { c.Require(perils) }); n != 0 {
+		t.Errorf("%v allocations a run", n)
 	}
 }
 

@@ -45,32 +45,48 @@ func (r *Rest) Validate() error {
 	return faults.Err()
 }
 
-// Combine gives the capital of the company from that of the book: √(k² + 2·c·k·B + B²), B and c the rest's capital and correlation. k may be below 0, as the
-// deviation of a value at risk at a low level may be.
+// Combine gives the capital of the company from that of the book: √(k² + 2·c·k·B + B²), B and c the rest's capital and correlation. It is never
+// below 0. k may be below 0, as the deviation of a value at risk at a low level may be. Where k < −c·B, that is with k far enough below 0, or with c
+// below 0 and a small k, the company's capital falls as the book's rises.
 //
-// It is convex in k, with the second derivative B²·(1 − c²)/K³ ≥ 0, so that a tangent bounds it from below.
+// The root is the length of the vector (k + c·B, B·√(1 − c²)), whose square is k² + 2·c·k·B + c²B² + (1 − c²)B². A length is a convex function of its
+// vector, and the vector is linear in k: so the root is convex in k, and a tangent bounds it from below. Its derivatives are (k + c·B)/K and
+// (K² − (k + c·B)²)/K³ = B²·(1 − c²)/K³ ≥ 0.
 func (r *Rest) Combine(k float64) float64 {
-	return math.Sqrt(max(float64(k*k)+float64(2*r.Correlation*k*r.Capital)+float64(r.Capital*r.Capital), 0))
+	if cross := float64(2 * r.Correlation * k * r.Capital); cross >= 0 {
+		return math.Sqrt(float64(k*k) + cross + float64(r.Capital*r.Capital))
+	}
+	// The sum would cancel, near c = −1 and k = B to half its digits or to less than 0; the length does not.
+	return math.Hypot(r.along(k), r.Capital*math.Sqrt((1-r.Correlation)*(1+r.Correlation)))
 }
 
-// Slope gives by how much the company's capital rises per unit of the book's, at k; at the apex, where both are 0, the slope to the right.
+// along is the part of the company's vector that moves with the book.
+func (r *Rest) along(k float64) float64 { return k + float64(r.Correlation*r.Capital) }
+
+// Slope gives by how much the company's capital rises per unit of the book's, at k, from −1 to 1; at the kink, where the company's capital is 0, the
+// slope to the right, 1.
 func (r *Rest) Slope(k float64) float64 {
 	all := r.Combine(k)
 	if all == 0 {
 		return 1
 	}
-	return (k + r.Correlation*r.Capital) / all
+	return r.along(k) / all
 }
 
-// Years gives the rest's loss of every year, in money. The values are the law's quantiles at the middles of N equal strata, so that the law is met as closely
-// as N values can; their order pairs them with the gross losses by a normal copula whose Spearman correlation is RankCorrelation: Pearson's
-// parameter is 2·sin(π·ρ/6) (Kruskal 1958). Equal gross losses are ordered at random. At ±1 the pairing is exact. The stream is seeded by (Seed,
-// "rest of the company"), so that no other draw moves it.
+// Years gives the rest's loss of every year, in money; Quantile must be given. The values are the law's quantiles at the middles of N equal strata, so
+// that the law is met as closely as N values can; their order pairs them with the gross losses by a normal copula whose Spearman correlation is
+// RankCorrelation: Pearson's parameter is 2·sin(π·ρ/6) (Kruskal 1958). The correlation of one pairing scatters around it by about (1 − ρ²)/√N; at ±1
+// the pairing is exact. Equal gross losses, such as those of years without an event, are ordered at random, so that the numbering of years never shows;
+// the correlation is that with the losses so ordered. The stream is seeded by (Seed, "rest of the company"), so that no other draw moves it. It takes
+// time of the order N·log N.
 func (r *Rest) Years(grossLosses []float64) []float64 {
 	n := len(grossLosses)
 	sum := sha256.Sum256(binary.LittleEndian.AppendUint64([]byte("rest of the company "), r.Seed))
 	random := rand.New(rand.NewPCG(binary.LittleEndian.Uint64(sum[:8]), binary.LittleEndian.Uint64(sum[8:16])))
 	loading := 2 * math.Sin(math.Pi*r.RankCorrelation/6)
+	if math.Abs(r.RankCorrelation) == 1 {
+		loading = r.RankCorrelation // the sine is short of it by a rounding, which would leave noise of 1.5e-8
+	}
 	own := math.Sqrt(max(1-loading*loading, 0))
 	// Scores of the gross losses, those of equal losses in random order, mixed with noise: their order is that of the rest's losses.
 	mixed := make([]float64, n)
@@ -102,22 +118,38 @@ func byValue(values []float64, random *rand.Rand) []int {
 // RestFamilies lists the families that RestLaw knows.
 func RestFamilies() []string { return []string{"normal", "lognormal"} }
 
-// RestLaw gives the quantiles of a yearly loss of that mean and standard deviation, in money. The mean of a lognormal must be above 0, the standard deviation
-// of either too.
+// RestLaw gives the quantiles of a yearly loss of that mean and standard deviation, in money. The standard deviation must be above 0; the mean of a
+// lognormal law must be above 0 too, and not so small beside the standard deviation that the square of their ratio overflows. The error holds every
+// fault at once, under the keys mean, sd and family.
 func RestLaw(family string, mean, deviation float64) (func(probability float64) float64, error) {
-	if !(deviation > 0) || math.IsInf(deviation, 0) || math.IsNaN(mean) || math.IsInf(mean, 0) {
-		return nil, &fault.Fault{Key: "sd", Found: fmt.Sprint(deviation), Allowed: "money above 0"}
+	var faults fault.List
+	if math.IsNaN(mean) || math.IsInf(mean, 0) {
+		faults.Add(fault.Fault{Key: "mean", Found: fmt.Sprint(mean), Allowed: "money"})
+	}
+	if !(deviation > 0) || math.IsInf(deviation, 0) {
+		faults.Add(fault.Fault{Key: "sd", Found: fmt.Sprint(deviation), Allowed: "money above 0"})
 	}
 	switch family {
 	case "normal":
+		if err := faults.Err(); err != nil {
+			return nil, err
+		}
 		return distuv.Normal{Mu: mean, Sigma: deviation}.Quantile, nil
 	case "lognormal":
-		if mean <= 0 {
-			return nil, &fault.Fault{Key: "mean", Found: fmt.Sprint(mean), Allowed: "money above 0, for a lognormal law"}
-		}
 		cv := deviation / mean
 		variance := math.Log1p(cv * cv)
+		switch {
+		case mean <= 0:
+			faults.Add(fault.Fault{Key: "mean", Found: fmt.Sprint(mean), Allowed: "money above 0, for a lognormal law"})
+		case faults.Len() == 0 && math.IsInf(variance, 0):
+			faults.Add(fault.Fault{Key: "sd", Found: fmt.Sprint(deviation), Allowed: "at most 1e150 times the mean, for a lognormal law"})
+		}
+		if err := faults.Err(); err != nil {
+			return nil, err
+		}
 		return distuv.LogNormal{Mu: math.Log(mean) - variance/2, Sigma: math.Sqrt(variance)}.Quantile, nil
 	}
-	return nil, &fault.Fault{Key: "family", Found: fmt.Sprintf("no family is named %q", family), Allowed: fmt.Sprintf("%q", RestFamilies()), Nearest: fault.Nearest(family, RestFamilies())}
+	faults.Add(fault.Fault{Key: "family", Found: fmt.Sprintf("no family is named %q", family), Allowed: fmt.Sprintf("%q", RestFamilies()),
+		Nearest: fault.Nearest(family, RestFamilies())})
+	return nil, faults.Err()
 }

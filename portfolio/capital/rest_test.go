@@ -8,6 +8,7 @@ import (
 	"strings"
 	"testing"
 
+	"cedewright/portfolio/fault"
 	"cedewright/portfolio/sample"
 
 	"gonum.org/v1/gonum/stat"
@@ -35,9 +36,44 @@ func TestRestAsAFigure(t *testing.T) {
 		if math.Abs(got-r.Slope(at)) > 1e-6+step*step/(r.Combine(at)*r.Combine(at)) {
 			t.Fatalf("slope %v, the difference says %v", r.Slope(at), got)
 		}
+		all := r.Combine(at)
+		second := r.Capital * r.Capital * (1 - r.Correlation*r.Correlation) / (all * all * all)
+		small := 1e-4 * all // so that the third derivatives, of the order of second/all, count for 1e-8, and rounding over the step for 1e-12/all
+		if got := (r.Slope(at+small) - r.Slope(at-small)) / (2 * small); math.Abs(got-second) > 1e-6*second+1e-10/all {
+			t.Fatalf("second derivative %v, the difference says %v", second, got)
+		}
+		if math.Abs(r.Slope(at)) > 1+1e-15 {
+			t.Fatalf("slope %v", r.Slope(at))
+		}
 	})
 	if got := (&Rest{}).Slope(0); got != 1 {
 		t.Errorf("slope of nothing %v", got)
+	}
+}
+
+// TestRestThatCancels: at a correlation of −1 the company's capital is the distance of the two figures, to the last digit however near they are; at 1 it is
+// their sum, and for a k below 0 what the square says.
+func TestRestThatCancels(t *testing.T) {
+	const b = 80.0
+	for _, k := range []float64{0, 40, 79, 80 - 1e-9, 80, 80 + 1e-12, 81, 500, -3} {
+		if got := (&Rest{Capital: b, Correlation: -1}).Combine(k); got != math.Abs(k-b) {
+			t.Errorf("correlation -1, %v: company %v, want %v", k, got, math.Abs(k-b))
+		}
+		if got := (&Rest{Capital: b, Correlation: 1}).Combine(k); got != math.Abs(k+b) {
+			t.Errorf("correlation 1, %v: company %v, want %v", k, got, math.Abs(k+b))
+		}
+		if got := (&Rest{}).Combine(k); got != math.Abs(k) {
+			t.Errorf("no rest, %v: company %v", k, got)
+		}
+	}
+	apart := &Rest{Capital: b, Correlation: -1}
+	if below, at, above := apart.Slope(79), apart.Slope(80), apart.Slope(81); below != -1 || at != 1 || above != 1 {
+		t.Errorf("slopes around the kink: %v, %v, %v", below, at, above)
+	}
+	// Short of −1 it is √(k² + 2ckB + B²) to all digits: at k = B that is B·√(2(1+c)).
+	near := &Rest{Capital: b, Correlation: -1 + 0x1p-30}
+	if got, want := near.Combine(b), b*math.Sqrt(2*0x1p-30); math.Abs(got-want) > 1e-14*want { // a few roundings; the sum has seven digits left
+		t.Errorf("company %.17g, want %.17g", got, want)
 	}
 }
 
@@ -129,10 +165,88 @@ func TestBadRests(t *testing.T) {
 		family   string
 		mean, sd float64
 		want     string
-	}{{"normal", 0, 0, "sd: 0"}, {"lognormal", 0, 1, "mean: 0"}, {"norml", 0, 1, `did you mean "normal"`}, {"normal", math.NaN(), 1, "sd"}} {
-		if _, err := RestLaw(c.family, c.mean, c.sd); err == nil || !strings.Contains(err.Error(), c.want) {
-			t.Errorf("%v, want %s", err, c.want)
+	}{
+		{"normal", 0, 0, "sd: 0; allowed: money above 0"},
+		{"normal", -5, math.Inf(1), "sd: +Inf; allowed: money above 0"},
+		{"normal", math.NaN(), 1, "mean: NaN; allowed: money"},
+		{"normal", math.Inf(-1), math.NaN(), "mean: -Inf; allowed: money\nsd: NaN; allowed: money above 0"},
+		{"lognormal", 0, 1, "mean: 0; allowed: money above 0, for a lognormal law"},
+		{"lognormal", -1, -1, "sd: -1; allowed: money above 0\nmean: -1; allowed: money above 0, for a lognormal law"},
+		{"lognormal", math.NaN(), 1, "mean: NaN; allowed: money"},
+		{"lognormal", 1e-200, 1, "sd: 1; allowed: at most 1e150 times the mean, for a lognormal law"},
+		{"norml", 0, 1, `family: no family is named "norml"; allowed: ["normal" "lognormal"]; did you mean "normal"?`},
+	} {
+		if law, err := RestLaw(c.family, c.mean, c.sd); err == nil || err.Error() != c.want || law != nil {
+			t.Errorf("%s, %v, %v: %v, want %s", c.family, c.mean, c.sd, err, c.want)
 		}
+	}
+	faults := fault.All((&Rest{Capital: math.NaN(), Correlation: math.NaN(), RankCorrelation: 1.0001}).Validate())
+	if len(faults) != 3 {
+		t.Errorf("faults %v, want three", faults)
+	}
+}
+
+// TestRestLaws: the moments and the median of both families, by their quantiles.
+func TestRestLaws(t *testing.T) {
+	for _, c := range []struct {
+		family           string
+		mean, sd, median float64
+	}{
+		{"normal", -20, 60, -20}, {"lognormal", 20, 60, 20 / math.Sqrt(10)}, {"lognormal", 3e6, 3e4, 3e6 / math.Sqrt(1.0001)}, // median = mean/√(1 + cv²)
+	} {
+		law, err := RestLaw(c.family, c.mean, c.sd)
+		if err != nil {
+			t.Fatal(err)
+		}
+		if got := law(0.5); math.Abs(got-c.median) > 1e-12*math.Abs(c.median) { // roundings of log and exp
+			t.Errorf("%s: median %v, want %v", c.family, got, c.median)
+		}
+		// The variance of the logarithm, or of the law itself, from the spread between the quantiles at Φ(±1).
+		high, low := law(0.8413447460685429), law(0.15865525393145707)
+		spread, want := (high-low)/2, c.sd
+		if c.family == "lognormal" {
+			spread, want = math.Log(high/low)/2, math.Sqrt(math.Log1p(c.sd*c.sd/c.mean/c.mean))
+		}
+		if math.Abs(spread-want) > 1e-9*want { // the quantiles of the normal law are good to about 1e-12, the logarithm of their ratio divides by 0.01
+			t.Errorf("%s: spread %v, want %v", c.family, spread, want)
+		}
+	}
+	for _, family := range RestFamilies() {
+		if _, err := RestLaw(family, 1, 1); err != nil {
+			t.Errorf("%s: %v", family, err)
+		}
+	}
+}
+
+// TestRestOfFewYears: no year, one and two, and a seed of its own: another seed gives other years, the same years in the same order of the law.
+func TestRestOfFewYears(t *testing.T) {
+	law := func(p float64) float64 { return p }
+	r := &Rest{Quantile: law, RankCorrelation: 1}
+	if got := r.Years(nil); len(got) != 0 {
+		t.Errorf("no year: %v", got)
+	}
+	if got := r.Years([]float64{7}); !slices.Equal(got, []float64{0.5}) {
+		t.Errorf("one year: %v", got)
+	}
+	if got := r.Years([]float64{7, -3, 5}); !slices.Equal(got, []float64{2.5 / 3, 0.5 / 3, 0.5}) {
+		t.Errorf("three years: %v", got)
+	}
+	r.RankCorrelation = -1
+	if got := r.Years([]float64{7, -3, 5}); !slices.Equal(got, []float64{0.5 / 3, 2.5 / 3, 0.5}) {
+		t.Errorf("three years the other way round: %v", got)
+	}
+	gross := make([]float64, 1000)
+	for i := range gross {
+		gross[i] = float64(i)
+	}
+	one, other := (&Rest{Quantile: law, RankCorrelation: 0.5, Seed: 1}).Years(gross), (&Rest{Quantile: law, RankCorrelation: 0.5, Seed: 2}).Years(gross)
+	if slices.Equal(one, other) {
+		t.Error("another seed gives the same years")
+	}
+	slices.Sort(one)
+	slices.Sort(other)
+	if !slices.Equal(one, other) {
+		t.Error("another seed gives another law")
 	}
 }
 
