@@ -141,8 +141,10 @@ func TestBadCovariances(t *testing.T) {
 			t.Errorf("%v, want %s", err, want)
 		}
 	}
-	all := &Covariance{Uncorrelated: math.Inf(1), Charges: [5]float64{-1, 0, 0, 0, math.NaN()}, Perils: []string{"a", "b", "a", "a"}, ContingentCredit: -1, Operational: math.NaN(),
-		Multiple: math.NaN()}
+	all := &Covariance{
+		Uncorrelated: math.Inf(1), Charges: [5]float64{-1, 0, 0, 0, math.NaN()}, Perils: []string{"a", "b", "a", "a"},
+		ContingentCredit: -1, Operational: math.NaN(), Multiple: math.NaN(),
+	}
 	var keys []string
 	for _, f := range fault.All(all.Validate()) {
 		keys = append(keys, f.Key)

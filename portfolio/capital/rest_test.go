@@ -134,6 +134,26 @@ func TestRestYearByYear(t *testing.T) {
 	}
 }
 
+// TestRestCorrelationIsSpearman: over many pairings the rank correlation comes to the one asked for, not to that of the normal scores, which would leave
+// (6/π)·arcsin(ρ/2), 0.483 for 0.5 and 0.786 for 0.8.
+func TestRestCorrelationIsSpearman(t *testing.T) {
+	const n, runs = 2000, 100
+	gross := make([]float64, n)
+	for i := range gross {
+		gross[i] = float64(i * 7919 % n)
+	}
+	for _, want := range []float64{-0.5, 0.5, 0.8} {
+		var found []float64
+		for seed := range uint64(runs) {
+			found = append(found, spearman(gross, (&Rest{Quantile: func(p float64) float64 { return p }, RankCorrelation: want, Seed: seed}).Years(gross)))
+		}
+		mean, deviation := stat.MeanStdDev(found, nil)
+		if math.Abs(mean-want) > 4*deviation/math.Sqrt(runs)+1.0/n { // four standard errors, and a bias of the order of 1/n
+			t.Errorf("rank correlation %.4f ± %.4f, want %v", mean, deviation/math.Sqrt(runs), want)
+		}
+	}
+}
+
 // TestRestOfEqualYears: years of equal gross loss come in random order, not in that of their numbers.
 func TestRestOfEqualYears(t *testing.T) {
 	law, err := RestLaw("normal", 0, 1)

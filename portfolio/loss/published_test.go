@@ -66,11 +66,11 @@ func publishedModel(t *testing.T, name string) (loss.Frequency, loss.Severity) {
 	return nil, nil
 }
 
-// simulatedTable gives the years of one model, alone in its book.
+// simulatedTable gives the years of one model, alone in its book; every model has random numbers of its own.
 func simulatedTable(t *testing.T, years int, f loss.Frequency, s loss.Severity) *loss.Table {
 	t.Helper()
 	table, err := loss.NewBuilder(years, []string{"a"}).Simulate(21, []loss.Model{{
-		Name: "m", Peril: "p", Frequency: f, Severity: s, Split: []loss.Share{{Class: "a", Fraction: 1}},
+		Name: f.String() + " of " + s.String(), Peril: "p", Frequency: f, Severity: s, Split: []loss.Share{{Class: "a", Fraction: 1}},
 	}}, nil, 2)
 	if err != nil {
 		t.Fatal(err)
