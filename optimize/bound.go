@@ -78,7 +78,8 @@ func (a *Appraiser) mixBound(mix criteriaMix, curves []market.Curve) Bound {
 	if rest == nil || rest.Quantile != nil {
 		return Bound{Known: true, TotalCost: a.thinLayers(mix, curves, losses, constant, a.c.CostOfCapital)}
 	}
-	bound := Bound{Known: true, TotalCost: math.Inf(-1)}
+	// No requirement of the company is below the root's least value, whatever the book asks.
+	bound := Bound{Known: true, TotalCost: a.c.CostOfCapital * rest.Capital * math.Sqrt(max(1-rest.Correlation*rest.Correlation, 0))}
 	const tangents = 16 // each is a bound; a few find nearly the best
 	most := mix.of(losses, constant)
 	for i := range tangents + 1 {

@@ -43,6 +43,11 @@ func drawPoisson(r *rand.Rand, rate float64) int {
 	if rate == 0 {
 		return 0
 	}
+	// From a rate of 10 on, gonum (v0.17) draws from the law given that there is an event: it rejects 0. Years without one are drawn first; beyond a
+	// rate of 37 they are rarer than the smallest random number.
+	if rate >= 10 && rate < 37 && r.Float64() < math.Exp(-rate) {
+		return 0
+	}
 	return int(distuv.Poisson{Lambda: rate, Src: r}.Rand())
 }
 
