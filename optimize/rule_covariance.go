@@ -109,6 +109,7 @@ type perilSlot struct {
 	peril  *perilYears
 	offset []float64 // by year; zero where no treaty answers
 	used   int       // offsets from here on are zero
+	guess  float64   // see perilYears.largest
 	rose   bool      // some offset may be above zero: a reinstatement may cost more than the treaty paid
 }
 
@@ -200,28 +201,36 @@ func (r *covarianceRule) netAt(p *position, y perilAtLevel, w *workspace) float6
 }
 
 // largest gives the k-th largest net loss, as Appraiser.largest does: the worst years before reinsurance bound it from below, but for the odd programme
-// whose reinsurance may make a year worse.
+// whose reinsurance may make a year worse. The bound starts from a guess, a little below the figure of the last programme; where fewer than k losses are
+// above it, it was too high, and the work is done again without. An order statistic does not depend on how it was found, so the guess moves time alone.
 func (y *perilYears) largest(slot *perilSlot, k int, w *workspace) float64 {
 	w.few = w.few[:0]
 	if slot.rose {
 		for i, x := range y.annual {
 			w.few = append(w.few, x+slot.offset[i])
 		}
-		return sample.Select(w.few, len(w.few)-k+1)
+	} else if w.few = y.above(slot, k, slot.guess, w.few); len(w.few) < k {
+		w.few = y.above(slot, k, math.Inf(-1), w.few[:0])
 	}
-	least := math.Inf(-1)
+	x := sample.Select(w.few, len(w.few)-k+1)
+	slot.guess = x - 0.02*math.Abs(x)
+	return x
+}
+
+// above gives the net losses above a bound that rises as they are found: k of them at least, if so many are above the bound given.
+func (y *perilYears) above(slot *perilSlot, k int, least float64, few []float64) []float64 {
 	for i, x := range y.falling {
 		if x <= least {
 			break
 		}
 		if net := x + slot.offset[y.order[i]]; net > least {
-			if w.few = append(w.few, net); len(w.few) >= 3*k {
-				least = sample.Select(w.few, len(w.few)-k+1)
-				w.few = append(w.few[:0], w.few[len(w.few)-k:]...)
+			if few = append(few, net); len(few) >= 3*k {
+				least = sample.Select(few, len(few)-k+1)
+				few = append(few[:0], few[len(few)-k:]...)
 			}
 		}
 	}
-	return sample.Select(w.few, len(w.few)-k+1)
+	return few
 }
 
 // losses gives the perils' losses of a position that netLosses has just left in w.

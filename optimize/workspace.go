@@ -38,7 +38,7 @@ func (a *Appraiser) newWorkspace() *workspace {
 	n := a.years
 	w := &workspace{centred: a.centred, offset: make([]float64, n), loss: make([]float64, n), sorted: make([]float64, n), annual: make([]float64, n)}
 	for _, peril := range a.slots {
-		w.slots = append(w.slots, perilSlot{peril: peril, offset: make([]float64, n)})
+		w.slots = append(w.slots, perilSlot{peril: peril, offset: make([]float64, n), guess: math.Inf(-1)})
 	}
 	w.tails, w.companyTails = make([]sample.TailFigures, len(a.levels)), make([]sample.TailFigures, len(a.levels))
 	if a.rest != nil {
